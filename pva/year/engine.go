@@ -1,0 +1,114 @@
+// Package year takes a block of replicates through one year after another: it
+// is the simulator. A case becomes a list of passes, each a plain loop over the
+// 64 lanes of a block; a feature that the case does not use is no pass in its
+// list. It draws every random number of a replicate from streams named by
+// (seed, replicate, purpose) and takes every formula from package rates.
+//
+// It counts nothing: the rows of each census go to the sink of package
+// ensemble, which runs it.
+package year
+
+import (
+	"errors"
+
+	"ebbline/pva/ensemble"
+	"ebbline/pva/rates"
+)
+
+const lanesMax = ensemble.Lanes
+
+// Engine simulates a case (variant 0) and its alternatives side by side. The
+// variants share each replicate's weather, catastrophe and survey draws.
+type Engine struct {
+	seed     uint64
+	programs []*program
+	horizons []int
+	horizon  int // the longest
+	needs    needs
+}
+
+// needs says which shared numbers any variant uses; what none uses is not drawn.
+type needs struct {
+	weather      bool
+	catastrophes int  // draws a year: one uniform each
+	killNormals  bool // and one normal each
+	surveys      int  // one normal each a year
+}
+
+// New compiles the variants. The first is the case that the others are
+// compared with.
+func New(seed uint64, variants ...*rates.Model) (*Engine, error) {
+	if len(variants) == 0 {
+		return nil, errors.New("year: no case to simulate")
+	}
+	e := &Engine{seed: seed}
+	for _, m := range variants {
+		p := compile(m)
+		e.programs = append(e.programs, p)
+		h := m.Case.Question.Horizon
+		e.horizons = append(e.horizons, h)
+		e.horizon = max(e.horizon, h)
+		e.needs.weather = e.needs.weather || m.Birth.Sigma != 0 || m.Death.Varies()
+		e.needs.catastrophes = max(e.needs.catastrophes, len(m.Case.Catastrophe))
+		for _, k := range m.Kills {
+			e.needs.killNormals = e.needs.killNormals || k.V != 0
+		}
+		for i := range m.Takes {
+			if m.Takes[i].Survey.Sigma != 0 {
+				e.needs.surveys = max(e.needs.surveys, len(m.Takes))
+			}
+		}
+	}
+	return e, nil
+}
+
+// Horizons are the years of each variant.
+func (e *Engine) Horizons() []int { return e.horizons }
+
+// Worker makes a worker with lanes of its own.
+func (e *Engine) Worker() ensemble.Worker {
+	w := &worker{e: e, shared: newShared(e.needs)}
+	for _, p := range e.programs {
+		w.blocks = append(w.blocks, newBlock(p))
+	}
+	return w
+}
+
+type worker struct {
+	e      *Engine
+	shared *shared
+	blocks []*block
+	end    ensemble.End
+}
+
+// Block runs one block of replicates through all years of all variants. The
+// variants go through each year together, so that the year's shared numbers are
+// drawn once.
+func (w *worker) Block(first int64, lanes int, sink ensemble.Sink) error {
+	w.shared.begin(w.e.seed, first, lanes)
+	for _, b := range w.blocks {
+		b.begin(w.e.seed, first, lanes)
+	}
+	for y := 1; y <= w.e.horizon; y++ {
+		w.shared.draw()
+		for v, b := range w.blocks {
+			if y > w.e.horizons[v] {
+				continue
+			}
+			b.beginYear(w.shared)
+			for _, pass := range b.program.passes {
+				pass(b, y)
+			}
+			if b.err != nil {
+				return b.err
+			}
+			b.census(y)
+			sink.Census(v, y, &b.row, w.blocks[0].row.Fallen, w.blocks[min(1, len(w.blocks)-1)].row.Fallen)
+		}
+	}
+	for v, b := range w.blocks {
+		b.finish(&w.end)
+		sink.Finish(v, &w.end)
+	}
+	return nil
+}

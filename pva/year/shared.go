@@ -1,0 +1,58 @@
+package year
+
+import "ebbline/rng"
+
+// shared holds the random numbers of a year that all variants of a replicate
+// have in common. They are drawn every year whether used or not, so that cases
+// that differ in a take or a rate share their years.
+type shared struct {
+	needs                        needs
+	lanes                        int
+	weather, catastrophe, survey [lanesMax]rng.Stream
+	u1, u2                       [lanesMax]float64   // innovations of the weather
+	strikes                      [][lanesMax]float64 // uniform, one a catastrophe
+	kills                        [][lanesMax]float64 // normal, one a catastrophe
+	surveys                      [][lanesMax]float64 // normal, one a harvest rule
+}
+
+func newShared(n needs) *shared {
+	return &shared{needs: n, strikes: make([][lanesMax]float64, n.catastrophes),
+		kills: make([][lanesMax]float64, n.catastrophes), surveys: make([][lanesMax]float64, n.surveys)}
+}
+
+func (s *shared) begin(seed uint64, first int64, lanes int) {
+	s.lanes = lanes
+	for i := 0; i < lanes; i++ {
+		r := uint64(first) + uint64(i)
+		s.weather[i].Seed(seed, r, rng.Weather)
+		s.catastrophe[i].Seed(seed, r, rng.Catastrophes)
+		s.survey[i].Seed(seed, r, rng.Survey)
+	}
+}
+
+// draw draws one year: two normals of weather, then for each catastrophe a
+// uniform (and a normal, if any variant's killing varies), then a normal for
+// each harvest rule (if any variant surveys with error).
+func (s *shared) draw() {
+	if s.needs.weather {
+		for i := 0; i < s.lanes; i++ {
+			s.u1[i] = rng.Normal(&s.weather[i])
+			s.u2[i] = rng.Normal(&s.weather[i])
+		}
+	}
+	for c := range s.strikes {
+		for i := 0; i < s.lanes; i++ {
+			s.strikes[c][i] = s.catastrophe[i].Float64()
+		}
+		if s.needs.killNormals {
+			for i := 0; i < s.lanes; i++ {
+				s.kills[c][i] = rng.Normal(&s.catastrophe[i])
+			}
+		}
+	}
+	for r := range s.surveys {
+		for i := 0; i < s.lanes; i++ {
+			s.surveys[r][i] = rng.Normal(&s.survey[i])
+		}
+	}
+}
