@@ -263,8 +263,8 @@ func (b *builder) unknown(e Entry) {
 	}
 	f := UnknownKey(e.Path)
 	f.Key = b.c.Display(f.Path)
-	if shape := Shape(e.Path); shape != "" {
-		f = Fault{Key: f.Key, Path: e.Path, Value: quoted(e.Value), Want: "is not " + shape, Fix: shapeFix(e.Path)}
+	if what := shape(e.Path); what != "" {
+		f = Fault{Key: f.Key, Path: e.Path, Value: quoted(e.Value), Want: "is not " + what, Fix: shapeFix(e.Path)}
 	}
 	b.add(f)
 }

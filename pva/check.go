@@ -260,7 +260,7 @@ func (b *builder) checkRun() {
 			b.fault("run.substeps", b.value("run.substeps"), "is not \"auto\", \"events\" or a whole number from 1", "leave it out: auto chooses by the expected number of events")
 		}
 	}
-	if b.has("run.substeps") && b.c.Births.Breeding == "pulse" {
+	if b.has("run.substeps") && r.Substeps != "auto" && b.c.Births.Breeding == "pulse" {
 		b.useless("run.substeps", `with breeding = "pulse"`, `remove it, or choose breeding = "flow"`)
 	}
 	if b.c.Start.Abundance > r.StopAbove {

@@ -13,10 +13,7 @@ import (
 // of names; overrides use Lookup, which refuses it. From tells for each entry
 // returned which of those given it comes from.
 func Resolve(entries []Entry) (out []Entry, from []int, faults Faults) {
-	r := resolver{names: map[string]map[string]int{}, highest: map[string]int{}}
-	for _, e := range entries {
-		r.declare(e)
-	}
+	r := newResolver(entries)
 	out, from = make([]Entry, 0, len(entries)), make([]int, 0, len(entries))
 	for i, e := range entries {
 		table, row, rest, ok := cutRow(e.Path)
@@ -47,6 +44,15 @@ type resolver struct {
 	names   map[string]map[string]int // table, name -> position from 1
 	highest map[string]int            // table -> highest position in use
 	faults  Faults
+}
+
+// newResolver learns the names of all rows.
+func newResolver(entries []Entry) *resolver {
+	r := &resolver{names: map[string]map[string]int{}, highest: map[string]int{}}
+	for _, e := range entries {
+		r.declare(e)
+	}
+	return r
 }
 
 // declare learns the name of a row that is given by position.

@@ -107,9 +107,9 @@ func patterns() []string {
 	return out
 }
 
-// Shape says what a path that holds further keys is: "a table", "a list" or "a
+// shape says what a path that holds further keys is: "a table", "a list" or "a
 // list of tables"; "" for a key of its own and for what is unknown.
-func Shape(path string) string {
+func shape(path string) string {
 	pattern, _ := patternOf(path)
 	switch {
 	case arrayTables[pattern]:
@@ -130,7 +130,7 @@ func Shape(path string) string {
 // shapeFix shows how a list or table is written.
 func shapeFix(path string) string {
 	pattern, _ := patternOf(path)
-	switch Shape(path) {
+	switch shape(path) {
 	case "a list":
 		return "write the values between [ and ]"
 	case "a list of lists":

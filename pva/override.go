@@ -20,6 +20,9 @@ func (c *Case) With(settings []Setting) (*Case, Faults) {
 		return nil, ch.faults
 	}
 	entries := ch.entries()
+	if faults := ch.names(entries); len(faults) > 0 {
+		return nil, faults
+	}
 	for {
 		out, faults := build(entries)
 		drop := map[string]bool{}
@@ -30,7 +33,7 @@ func (c *Case) With(settings []Setting) (*Case, Faults) {
 		}
 		if len(drop) == 0 {
 			if len(faults) > 0 {
-				return nil, faults
+				return nil, faults.WithoutEchoes()
 			}
 			return out, nil
 		}
@@ -108,6 +111,17 @@ func under(path string, any map[string]bool) bool {
 		}
 	}
 	return false
+}
+
+// names looks at the names of rows anew if one is set.
+func (ch *change) names(entries []Entry) Faults {
+	for path := range ch.at {
+		if _, _, rest, ok := cutRow(path); ok && rest == "name" {
+			r := newResolver(entries)
+			return r.faults
+		}
+	}
+	return nil
 }
 
 // rivals are keys of which a case gives only one: setting one drops the other.
