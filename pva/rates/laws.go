@@ -48,6 +48,10 @@ func NewFraction(mean, sd float64) (Fraction, error) {
 	if sd*sd >= mean*(1-mean) {
 		return Fraction{}, fmt.Errorf("a fraction with mean %v cannot have a standard deviation of %v (less than %.4g)", mean, sd, math.Sqrt(mean*(1-mean)))
 	}
+	return matchedFraction(mean, sd)
+}
+
+func matchFraction(mean, sd float64) (Fraction, error) {
 	// For each V the U that gives the mean is found by bisection; the variance
 	// then grows with V, so that V is found by bisection too.
 	centre := func(v float64) float64 {

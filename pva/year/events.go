@@ -10,6 +10,8 @@ import (
 // explode is found at once and not by patience.
 const maxEvents = 10_000_000
 
+const tooManyEvents = "more than 10,000,000 births and deaths in one year: set run.substeps = \"auto\" to take such years in sub-steps;"
+
 // table holds what births and deaths of the whole population are at n for
 // rates of 1, so that an event costs a look-up and not a formula.
 type table struct{ birth, death []float64 }
@@ -23,6 +25,36 @@ func newTable(m *rates.Model) table {
 		t.death[n] = m.DeathAt(1, float64(n)) * float64(n)
 	}
 	return t
+}
+
+// odds is what the next event is at n where rates never change: the mean wait
+// for it in years, and the chance that it is a birth.
+type odds struct{ wait, birth float64 }
+
+// newOdds is the table of odds of a case whose rates are the same in all years
+// of all replicates, nil for another.
+func newOdds(m *rates.Model, t table) []odds {
+	b, d := m.BirthCalendar[0], m.DeathCalendar[0]
+	for y := range m.BirthCalendar {
+		if m.BirthCalendar[y] != b || m.DeathCalendar[y] != d {
+			return nil
+		}
+	}
+	if m.Birth.Sigma != 0 || m.Death.Varies() {
+		return nil
+	}
+	for _, k := range m.Case.Catastrophe {
+		if k.Prob() > 0 && k.BirthsTimes != 1 {
+			return nil
+		}
+	}
+	out := make([]odds, tableSize)
+	for n := range out {
+		birth := float64(m.Birth.Mean * b * t.birth[n])
+		sum := birth + float64(m.Death.Mean()*d*t.death[n])
+		out[n] = odds{1 / sum, birth / sum}
+	}
+	return out
 }
 
 // total is births and deaths of the whole population at n in this year of lane i.
@@ -49,12 +81,8 @@ func (f *flow) events(b *block, i int, t float64, streams []rate, always bool, c
 		for k := range streams {
 			other += streams[k].at(n)
 		}
-		if sum+other <= 0 {
-			t = 1
-			break
-		}
 		t += rng.Exponential(s) / (sum + other)
-		if t >= 1 {
+		if !(t < 1) { // also where nothing can happen any more: a rate of 0
 			t = 1
 			break
 		}
@@ -62,7 +90,7 @@ func (f *flow) events(b *block, i int, t float64, streams []rate, always bool, c
 			b.n[i] = n
 			return t, false
 		}
-		u := float64(s.Float64() * (sum + other))
+		u := float64(uniform(s.Uint64()) * (sum + other))
 		switch {
 		case u < birth:
 			n++
@@ -86,6 +114,72 @@ func (f *flow) events(b *block, i int, t float64, streams []rate, always bool, c
 	}
 	b.n[i] = n
 	return t, true
+}
+
+// uniform is a word as a uniform number on [0, 1).
+func uniform(word uint64) float64 { return float64(word>>11) * 0x1p-53 }
+
+// together is events for all lanes at once where births and deaths are the only
+// events: the lanes take an event each in turn, so that the processor works on
+// many at a time, and a birth or death is a selection and not a jump. A lane
+// draws the same numbers as in events. A lane whose N leaves the table goes on
+// by itself.
+func (f *flow) together(b *block, y int) {
+	var t [lanesMax]float64
+	var racing [lanesMax]uint8
+	active := racing[:0]
+	top := min(f.eventsBelow, b.program.stopAbove, tableSize-1)
+	for i := 0; i < b.lanes; i++ {
+		switch {
+		case b.isOutgrown(i) || b.n[i] == 0:
+		case b.n[i] > top:
+			if f.lane(b, i, y, 0, 0, nil, false); b.err != nil {
+				return
+			}
+		default:
+			active = append(active, uint8(i))
+		}
+	}
+	births, deaths, fixed := f.table.birth, f.table.death, f.odds
+	for round := 0; len(active) > 0; round++ {
+		if round > maxEvents {
+			b.fail(int(active[0]), y, tooManyEvents)
+			return
+		}
+		for k := 0; k < len(active); {
+			i := active[k] & (lanesMax - 1)
+			n := b.n[i]
+			var o odds
+			if fixed != nil {
+				o = fixed[n]
+			} else {
+				birth := float64(b.birth[i] * births[n])
+				sum := birth + float64(b.death[i]*deaths[n])
+				o = odds{1 / sum, birth / sum}
+			}
+			t[i] += float64(rng.Exponential(&b.demography[i]) * o.wait)
+			if !(t[i] < 1) { // also where nothing can happen any more
+				active[k] = active[len(active)-1]
+				active = active[:len(active)-1]
+				continue
+			}
+			step := int64(-1)
+			if uniform(b.demography[i].Uint64()) < o.birth {
+				step = 1
+			}
+			n += step
+			b.n[i] = n
+			if n > top {
+				active[k] = active[len(active)-1]
+				active = active[:len(active)-1]
+				if f.lane(b, int(i), y, t[i], round+1, nil, false); b.err != nil {
+					return
+				}
+				continue
+			}
+			k++
+		}
+	}
 }
 
 // at is the stream's rate at n.

@@ -14,6 +14,7 @@ type flow struct {
 	m       *rates.Model
 	streams []stream
 	table   table
+	odds    []odds // of constant rates; nil where they change
 	// substeps divide the year where a lane is not simulated event by event.
 	substeps int
 	// eventsBelow: a lane is simulated event by event while N is at or below it.
@@ -49,6 +50,7 @@ func (s *stream) runs(n int64) bool {
 func newFlow(m *rates.Model) *flow {
 	f := &flow{m: m, streams: throughStreams(m)}
 	f.table = newTable(m)
+	f.odds = newOdds(m, f.table)
 	plan := rates.PlanSubsteps(m)
 	f.substeps, f.adaptive = plan.Substeps, plan.Adaptive
 	f.eventsBelow = math.MaxInt64
@@ -112,11 +114,15 @@ func (f *flow) pass(always bool) pass {
 				open = append(open, rate{st, st.perYear(y), st.perHead(y)})
 			}
 		}
+		if len(open) == 0 && !always {
+			f.together(b, y)
+			return
+		}
 		for i := 0; i < b.lanes; i++ {
 			if b.isOutgrown(i) {
 				continue
 			}
-			if f.lane(b, i, y, open, always); b.err != nil {
+			if f.lane(b, i, y, 0, 0, open, always); b.err != nil {
 				return
 			}
 			for k := range open {
@@ -129,11 +135,10 @@ func (f *flow) pass(always bool) pass {
 	}
 }
 
-// lane runs one replicate's year: event by event while N is at or below
-// eventsBelow, in sub-steps above.
-func (f *flow) lane(b *block, i, y int, streams []rate, always bool) {
+// lane runs one replicate's year from time t on, after so many events: event by
+// event while N is at or below eventsBelow, in sub-steps above.
+func (f *flow) lane(b *block, i, y int, t float64, events int, streams []rate, always bool) {
 	s := &b.demography[i]
-	t, events := 0.0, 0
 	step := 1 / float64(f.substeps)
 	b.most = b.n[i]
 	for k := 0; t < 1; {
@@ -143,7 +148,7 @@ func (f *flow) lane(b *block, i, y int, streams []rate, always bool) {
 			var ok bool
 			t, ok = f.events(b, i, t, streams, always, &events)
 			if !ok {
-				b.fail(i, y, "more than 10,000,000 births and deaths in one year: set run.substeps = \"auto\" to take such years in sub-steps;")
+				b.fail(i, y, tooManyEvents)
 				return
 			}
 			if b.isOutgrown(i) {

@@ -1,0 +1,109 @@
+package reports
+
+import (
+	"errors"
+	"fmt"
+	"io/fs"
+	"os"
+	"path/filepath"
+	"runtime"
+	"strconv"
+	"syscall"
+)
+
+// file is what Save needs of an open file; tests put one in its place that fails.
+type file interface {
+	Write(p []byte) (int, error)
+	Sync() error
+	Close() error
+}
+
+// create opens a file that must not exist yet.
+var create = func(name string) (file, error) {
+	return os.OpenFile(name, os.O_WRONLY|os.O_CREATE|os.O_EXCL, 0o666)
+}
+
+// Save writes a whole file or leaves the old one as it was: the data goes to a
+// temporary file in the same folder, reaches the disk, and takes the file's name
+// in one step. A link is followed to the file it names, and the old file's
+// permissions are kept. After an error no temporary file remains.
+func Save(path string, data []byte) error {
+	if real, err := filepath.EvalSymlinks(path); err == nil {
+		path = real
+	}
+	mode := fs.FileMode(0)
+	switch old, err := os.Stat(path); {
+	case err == nil && !old.Mode().IsRegular():
+		return fmt.Errorf("%s: is not a regular file; give the name of a file", path)
+	case err == nil:
+		mode = old.Mode().Perm()
+	case !errors.Is(err, fs.ErrNotExist):
+		return err
+	}
+	temporary, f, err := beside(path)
+	if err != nil {
+		return fmt.Errorf("%s: cannot be written: %w", path, err)
+	}
+	if err := fill(f, data); err != nil {
+		os.Remove(temporary)
+		return fmt.Errorf("%s: not written, the old file is as it was: %w", path, err)
+	}
+	if mode != 0 {
+		if err := os.Chmod(temporary, mode); err != nil {
+			os.Remove(temporary)
+			return fmt.Errorf("%s: not written, the old file is as it was: %w", path, err)
+		}
+	}
+	if err := os.Rename(temporary, path); err != nil {
+		os.Remove(temporary)
+		return fmt.Errorf("%s: not written, the old file is as it was: %w", path, err)
+	}
+	return syncFolder(filepath.Dir(path))
+}
+
+// beside makes a new hidden file in the folder of path; several programs may do
+// so at once.
+func beside(path string) (string, file, error) {
+	folder, base := filepath.Split(path)
+	for n := 1; ; n++ {
+		name := folder + "." + base + ".part" + strconv.Itoa(n)
+		f, err := create(name)
+		if err == nil {
+			return name, f, nil
+		}
+		if !errors.Is(err, fs.ErrExist) || n == 1000 {
+			return "", nil, err
+		}
+	}
+}
+
+func fill(f file, data []byte) error {
+	_, err := f.Write(data)
+	if err == nil {
+		err = f.Sync()
+	}
+	if closed := f.Close(); err == nil {
+		err = closed
+	}
+	return err
+}
+
+// syncFolder brings the new name to the disk. Systems that cannot sync a folder
+// say so, and then the rename is all that can be done.
+func syncFolder(folder string) error {
+	if runtime.GOOS == "windows" {
+		return nil
+	}
+	d, err := os.Open(folder)
+	if err != nil {
+		if errors.Is(err, fs.ErrPermission) {
+			return nil // a folder may be writable and not readable
+		}
+		return err
+	}
+	defer d.Close()
+	if err := d.Sync(); err != nil && !errors.Is(err, syscall.EINVAL) && !errors.Is(err, errors.ErrUnsupported) {
+		return fmt.Errorf("%s: the report is written, but the folder could not be synced: %w", folder, err)
+	}
+	return nil
+}

@@ -1,0 +1,42 @@
+package text
+
+import (
+	"fmt"
+	"strings"
+
+	"ebbline/pva"
+	"ebbline/reports"
+)
+
+// Exact is an answer without random numbers as terminal text.
+func Exact(c *pva.Case, name string, e *pva.ExactAnswer, verdict pva.Verdict, warnings []pva.Warning) string {
+	var b strings.Builder
+	b.WriteString(wrap(reports.TitleOf(c, name), "", 0))
+	b.WriteString(wrap(reports.Question(c), "", 0) + "\n")
+	rows := [][]string{
+		{"the risk", reports.Significant(100*e.Risk, 7) + " %", fmt.Sprintf("without random numbers; error at most %.1g %%", 100*e.Error)},
+		{"none left at the last census", reports.Significant(100*e.Extinction, 5) + " %", ""},
+	}
+	if c.Question.Limit.Set {
+		rows = append(rows, []string{"the permit's limit", reports.Significant(100*c.Question.Limit.Value, 6) + " %", string(verdict)})
+	}
+	b.WriteString(columns(rows, "  "))
+	b.WriteString("\n" + wrap(fmt.Sprintf("Method: %s; populations up to %s followed, %d points of weather a year.", e.Method, reports.Grouped(int64(e.States)), max(1, e.Nodes)), "  ", 0))
+	last := c.Question.Horizon
+	rows = [][]string{{c.TimeUnit, "fallen by then", "none left"}}
+	for y := 1; y <= last; y++ {
+		if y == 1 || y == last || y%max(1, (last+9)/10) == 0 {
+			rows = append(rows, []string{fmt.Sprint(c.Label(y)), reports.Significant(100*e.Fallen[y-1], 4) + " %", reports.Significant(100*e.Extinct[y-1], 4) + " %"})
+		}
+	}
+	b.WriteString("\n" + columns(rows, "  ", true, true, true))
+	for _, w := range warnings {
+		b.WriteString(wrap("Warning: "+w.String(), "", 2))
+	}
+	short, _ := reports.Cautions(c)
+	b.WriteString("\n")
+	for _, caution := range short {
+		b.WriteString(wrap(caution.Short, "", 0))
+	}
+	return b.String()
+}
