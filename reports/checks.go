@@ -43,7 +43,7 @@ func exactTable(a *pva.Assessment) *Table {
 	pct := Format{Percents, tableDigits(a.Outcome.Replicates)}
 	b := newTable("exact_check", "Simulation against the exact answer").
 		column("what", "", "", Format{}).column("simulated", "Simulated", "", pct).column("low", "Low", "", pct).column("high", "High", "", pct).
-		column("exact", "Exact", "", Format{Percents, 3}).column("error", "Its error, at most", "", Format{Kind: General}).column("difference", "Simulated less exact", "points", Format{Points, 3})
+		column("exact", "Exact", "", Format{Percents, 3}).column("error", "Its error, at most", "", Format{Kind: Small, Digits: 1}).column("difference", "Simulated less exact", "points", Format{Points, 3})
 	if e := exactAnswer(a.Exact); e == nil {
 		b.t.Columns = []Column{{Key: "what", Wide: true}}
 		b.row("none", map[string]Cell{"what": text("There is no exact answer for this case: " + a.Exact.Reason + ".")})
@@ -158,15 +158,17 @@ func substepsTable(a *pva.Assessment) *Table {
 	if u == nil {
 		return nil
 	}
-	b := newTable("substeps", "Sub-steps of the "+a.Case.TimeUnit).column("what", "", "", Format{}).column("value", "Value", "", Format{Kind: General}).wide("note", "")
+	b := newTable("substeps", "Sub-steps of the "+a.Case.TimeUnit).column("what", "", "", Format{}).column("value", "Value", "", Format{Kind: Small, Digits: 1})
 	if u.Substeps == 0 {
-		b.row("events", map[string]Cell{"what": text("Sub-steps"), "value": text("none"), "note": text("every birth and death was simulated as an event of its own: there is no error of this kind")})
+		b.t.Note = "Every birth and death was simulated as an event of its own: there is no error of this kind."
+		b.row("substeps", map[string]Cell{"what": text("Sub-steps a " + a.Case.TimeUnit), "value": text("none")})
 		return b.t
 	}
+	b.t.Note = "Rates are frozen within a sub-step. The bound on a probability follows from the two shifts by Pinsker's inequality over the horizon, and is usually generous."
 	b.row("substeps", map[string]Cell{"what": text("Sub-steps a " + a.Case.TimeUnit), "value": num(float64(u.Substeps)).as(Counts, 0)})
-	b.row("events", map[string]Cell{"what": text("Event by event while N is below"), "value": num(u.EventsBelow)})
-	b.row("log_growth", map[string]Cell{"what": text("Shift of mean log growth, at most"), "value": num(u.LogGrowth), "note": text("a " + a.Case.TimeUnit)})
-	b.row("variance", map[string]Cell{"what": text("Shift of its variance, at most"), "value": num(u.Variance), "note": text("relative")})
+	b.row("events", map[string]Cell{"what": text("Event by event while N is below"), "value": num(u.EventsBelow).as(Counts, 0)})
+	b.row("log_growth", map[string]Cell{"what": text("Shift of mean log growth a " + a.Case.TimeUnit + ", at most"), "value": num(u.LogGrowth)})
+	b.row("variance", map[string]Cell{"what": text("Relative shift of its variance, at most"), "value": num(u.Variance)})
 	b.row("bound", map[string]Cell{"what": text("Shift of any probability, at most"), "value": num(u.RiskBound)})
 	return b.t
 }

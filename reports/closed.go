@@ -1,6 +1,10 @@
 package reports
 
-import "ebbline/pva"
+import (
+	"strings"
+
+	"ebbline/pva"
+)
 
 // closedTable sets published formulas that apply to the case beside the figures
 // of this assessment; nil where none applies.
@@ -9,11 +13,13 @@ func closedTable(a *pva.Assessment) *Table {
 		return nil
 	}
 	b := newTable("closed", "Published formulas beside this answer").
-		wide("what", "").column("value", "By the formula", "", Format{Kind: General}).column("unit", "Unit", "", Format{}).
+		column("what", "", "", Format{}).column("value", "By the formula", "", Format{Kind: General}).column("unit", "Unit", "", Format{}).
 		column("beside", "Here", "", Format{Kind: General}).column("beside_name", "which is", "", Format{}).
-		column("difference", "Difference", "", Format{Kind: General}).wide("note", "What it assumes").wide("source", "Source")
+		column("difference", "Difference", "", Format{Kind: General})
+	var notes []string
 	for _, f := range a.Closed {
-		cells := map[string]Cell{"what": text(f.Name), "value": num(f.Value), "unit": text(f.Unit), "note": text(f.Note), "source": text(f.Source)}
+		cells := map[string]Cell{"what": text(f.Name), "value": num(f.Value), "unit": text(f.Unit)}
+		notes = append(notes, sentence(f.Name)+": "+f.Note+" ("+f.Source+").")
 		if f.Unit == "probability" {
 			pct := Format{Percents, 4}
 			v := num(f.Value)
@@ -29,5 +35,6 @@ func closedTable(a *pva.Assessment) *Table {
 		}
 		b.row(f.Name, cells)
 	}
+	b.t.Note = strings.Join(notes, " ")
 	return b.t
 }

@@ -115,6 +115,8 @@ func (f Format) Show(v float64) string {
 		return fixed(v, f.Digits)
 	case Percents:
 		return percentCell(v, f.Digits) + " %"
+	case Small:
+		return strconv.FormatFloat(v, 'e', f.Digits, 64)
 	case Points:
 		s := fixed(v, f.Digits)
 		if v > 0 && strings.Trim(s, "0.") != "" {

@@ -76,6 +76,7 @@ const (
 	Decimal             // a fixed number of decimals, grouped
 	Percents            // a fraction written as percent
 	Points              // percentage points, with a sign
+	Small               // a small number with its power of ten
 )
 
 // Column finds a column by key, -1 if there is none.

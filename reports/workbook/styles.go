@@ -111,6 +111,8 @@ func numberFormat(f reports.Format) string {
 		// A small risk is not shown as none.
 		small := "0." + strings.Repeat("0", f.Digits+2) + "5"
 		return `[=0]0\ %;[<` + small + `]` + decimals(f.Digits+1) + `\ %;` + decimals(f.Digits) + `\ %`
+	case reports.Small:
+		return decimals(f.Digits) + "E+00"
 	case reports.Points:
 		d := decimals(f.Digits)
 		return "+" + d + ";-" + d + ";" + d
