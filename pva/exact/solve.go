@@ -1,0 +1,141 @@
+// Package exact answers a case without random numbers: it carries the whole law
+// of N through the years, and the law of those that have not fallen, by the
+// transition matrix of a pulse year or the generator of a flow year, the weather
+// integrated by quadrature. It is the check of the simulation, and the verdict
+// where a case has an exact answer.
+//
+// It refuses cases whose state is more than N (estimates kept between surveys),
+// whose inputs are uncertain, and whose states, weather grid or combinations of
+// catastrophes are too many for memory or time; Cost says so beforehand, in
+// words, from a count of operations and never from the clock. Package assess
+// calls it. Figures here are derived, not drawn, so package math is used freely.
+package exact
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"math"
+
+	"ebbline/pva"
+	"ebbline/pva/rates"
+)
+
+// Cheap is the number of operations of about two seconds on one slow core:
+// below it the exact answer is added without being asked for.
+const Cheap = 2e9
+
+// Most is the number of operations beyond which there is no exact answer,
+// some ten minutes on one slow core.
+const Most = 4e11
+
+// Goal is the stated error of the risk that Solve tries to reach; with weather
+// that has memory it is GoalWithMemory.
+const (
+	Goal           = 1e-7
+	GoalWithMemory = 1e-5
+)
+
+// Options change how an exact answer is sought; the zero value is the usual way.
+type Options struct {
+	// Stated takes uncertain inputs at the values the case states instead of
+	// refusing them: for one draw, whose values have been put into the case.
+	Stated bool
+	// Most is the largest number of operations; 0 stands for Most.
+	Most float64
+	// Top is the largest state; 0 lets Solve choose.
+	Top int
+	// Order is the first number of quadrature points an axis; 0 lets Solve choose.
+	Order int
+}
+
+// Solve computes the exact answer of a case. Where there can be none the
+// answer has only its Reason. The error is that of ctx, or of a model that is nil.
+//
+// Answer.Error bounds the error of the risk in every year: the difference
+// between two orders of quadrature (and of two steps of the exponential), and
+// the chance of falling of all that was cut off above the largest state. Mean is
+// over replicates not outgrown, and NaN from the year on in which more than
+// 1e-6 has grown beyond the largest state without being outgrown.
+func Solve(ctx context.Context, m *rates.Model, opt Options) (*pva.ExactAnswer, error) {
+	if m == nil {
+		return nil, errors.New("exact: no model")
+	}
+	p := newPlan(m, opt)
+	if p.reason != "" {
+		return &pva.ExactAnswer{Reason: p.reason}, nil
+	}
+	return p.solve(ctx)
+}
+
+// solve runs the plan at two orders of quadrature, and at higher ones or with
+// more states while the stated error is too large and there are operations left.
+func (p *plan) solve(ctx context.Context) (*pva.ExactAnswer, error) {
+	var last *found
+	var best *pva.ExactAnswer
+	spent := 0.0
+	s := p.first
+	for level := 0; ; level++ {
+		spent += p.ops(s)
+		f, err := newRun(p.m, s).solve(ctx)
+		if err != nil {
+			return nil, fmt.Errorf("exact: %w", err)
+		}
+		if last != nil || !p.inexact {
+			gap := 0.0
+			if last != nil {
+				gap = difference(f.fallen, last.fallen)
+			}
+			best = p.answer(s, f, gap)
+			if best.Error <= p.goal/2 {
+				return best, nil
+			}
+		}
+		last = f
+		next := p.finer(s)
+		if f.cutting > p.goal/4 { // the states, not the points, are too few
+			next = s
+			next.top += s.top/4 + 10
+			last = nil
+		}
+		if p.memory(next) > mostBytes || (best != nil && spent+p.ops(next) > p.most) || level > 12 {
+			if best == nil {
+				best = p.answer(s, f, 1)
+			}
+			return best, nil
+		}
+		s = next
+	}
+}
+
+func difference(a, b []float64) float64 {
+	worst := 0.0
+	for i := range a {
+		worst = math.Max(worst, math.Abs(a[i]-b[i]))
+	}
+	return worst
+}
+
+// rounding bounds what sums of positive terms and cut tails add up to in a year.
+const rounding = 1e-13
+
+func (p *plan) answer(s setting, f *found, gap float64) *pva.ExactAnswer {
+	years := len(f.fallen)
+	a := &pva.ExactAnswer{
+		Risk: f.fallen[years-1], Extinction: f.extinct[years-1],
+		Error:  gap + f.cutting + rounding*float64(years),
+		Fallen: f.fallen, Extinct: f.extinct, Mean: f.mean,
+		States: s.top + 1, Nodes: p.nodes(s),
+	}
+	way := "transition matrix"
+	if p.m.Case.Births.Breeding == "flow" {
+		way = "generator of the birth-death chain"
+	}
+	a.Method = fmt.Sprintf("%s on 0 to %d", way, s.top)
+	if p.climate.memory != 0 {
+		a.Method += fmt.Sprintf(", weather with memory on a grid of %d points", a.Nodes)
+	} else if !p.climate.still() {
+		a.Method += fmt.Sprintf(", weather integrated with %d points", a.Nodes)
+	}
+	return a
+}
