@@ -13,7 +13,8 @@ import (
 type block struct {
 	program *program
 	shared  *shared
-	first   int64
+	first   int64 // number of the replicate in lane 0
+	step    int64 // from one lane's number to the next's
 	lanes   int
 	all     uint64 // mask of the lanes in use
 	seed    uint64
@@ -45,15 +46,15 @@ func newBlock(p *program) *block {
 }
 
 // begin sets the lanes to their start: model section 7.
-func (b *block) begin(seed uint64, first int64, lanes int) {
-	b.seed, b.first, b.lanes = seed, first, lanes
+func (b *block) begin(seed uint64, first, step int64, lanes int) {
+	b.seed, b.first, b.step, b.lanes = seed, first, step, lanes
 	b.all = ^uint64(0) >> uint(lanesMax-lanes)
 	b.outgrown, b.watched, b.err = 0, 0, nil
 	b.row = ensemble.Row{Lanes: lanes, Takes: b.program.takes, Stocks: b.program.stocks}
 	b.pairs, b.capped = 0, 0
 	c := b.program.model.Case
 	for i := 0; i < lanes; i++ {
-		r := uint64(first) + uint64(i)
+		r := uint64(first + int64(i)*step)
 		b.start[i].Seed(seed, r, rng.Start)
 		b.demography[i].Seed(seed, r, rng.Demography)
 		b.taking[i].Seed(seed, r, rng.Taking)
@@ -154,7 +155,7 @@ func (b *block) census(int) {
 // finish sums up the lanes at the end of a block. The sum of log growth over a
 // run of censuses telescopes to the logarithm of its last over its first.
 func (b *block) finish(end *ensemble.End) {
-	*end = ensemble.End{First: b.first, Lanes: b.lanes, Smallest: b.smallest, Fallen: b.row.Fallen, LogPairs: b.pairs, Capped: b.capped}
+	*end = ensemble.End{Lanes: b.lanes, Smallest: b.smallest, Fallen: b.row.Fallen, LogPairs: b.pairs, Capped: b.capped}
 	for i := 0; i < b.lanes; i++ {
 		if b.firstN[i] > 0 {
 			growth := portable.Log(float64(b.lastN[i])) - portable.Log(float64(b.firstN[i]))
@@ -167,6 +168,6 @@ func (b *block) finish(end *ensemble.End) {
 // be run again alone.
 func (b *block) fail(lane, y int, what string) {
 	if b.err == nil {
-		b.err = fmt.Errorf("%s in replicate %d, year %d (seed %d)", what, b.first+int64(lane), b.program.model.Case.Label(y), b.seed)
+		b.err = fmt.Errorf("%s in replicate %d, year %d (seed %d)", what, b.first+int64(lane)*b.step, b.program.model.Case.Label(y), b.seed)
 	}
 }

@@ -25,6 +25,8 @@ type Engine struct {
 	horizons []int
 	horizon  int // the longest
 	needs    needs
+	// Replicate i of a block is replicate from + i*step of the seed's streams.
+	from, step int64
 }
 
 // needs says which shared numbers any variant uses; what none uses is not drawn.
@@ -41,7 +43,7 @@ func New(seed uint64, variants ...*rates.Model) (*Engine, error) {
 	if len(variants) == 0 {
 		return nil, errors.New("year: no case to simulate")
 	}
-	e := &Engine{seed: seed}
+	e := &Engine{seed: seed, step: 1}
 	for _, m := range variants {
 		p := compile(m)
 		e.programs = append(e.programs, p)
@@ -60,6 +62,19 @@ func New(seed uint64, variants ...*rates.Model) (*Engine, error) {
 		}
 	}
 	return e, nil
+}
+
+// Numbered is the same engine with other replicate numbers: what its blocks call
+// replicate i runs on the random numbers of replicate from + i*step. Draws of
+// uncertain inputs share out the replicates of a run among themselves so. It
+// panics unless from >= 0 and step >= 1; the engine itself stays as it is.
+func (e *Engine) Numbered(from, step int64) *Engine {
+	if from < 0 || step < 1 {
+		panic("year: replicates are numbered upwards from 0")
+	}
+	n := *e
+	n.from, n.step = from, step
+	return &n
 }
 
 // Horizons are the years of each variant.
@@ -85,9 +100,10 @@ type worker struct {
 // variants go through each year together, so that the year's shared numbers are
 // drawn once.
 func (w *worker) Block(first int64, lanes int, sink ensemble.Sink) error {
-	w.shared.begin(w.e.seed, first, lanes)
+	number := w.e.from + first*w.e.step
+	w.shared.begin(w.e.seed, number, w.e.step, lanes)
 	for _, b := range w.blocks {
-		b.begin(w.e.seed, first, lanes)
+		b.begin(w.e.seed, number, w.e.step, lanes)
 	}
 	for y := 1; y <= w.e.horizon; y++ {
 		w.shared.draw()
@@ -108,6 +124,7 @@ func (w *worker) Block(first int64, lanes int, sink ensemble.Sink) error {
 	}
 	for v, b := range w.blocks {
 		b.finish(&w.end)
+		w.end.First = first
 		sink.Finish(v, &w.end)
 	}
 	return nil

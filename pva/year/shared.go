@@ -20,10 +20,10 @@ func newShared(n needs) *shared {
 		kills: make([][lanesMax]float64, n.catastrophes), surveys: make([][lanesMax]float64, n.surveys)}
 }
 
-func (s *shared) begin(seed uint64, first int64, lanes int) {
+func (s *shared) begin(seed uint64, first, step int64, lanes int) {
 	s.lanes = lanes
 	for i := 0; i < lanes; i++ {
-		r := uint64(first) + uint64(i)
+		r := uint64(first + int64(i)*step)
 		s.weather[i].Seed(seed, r, rng.Weather)
 		s.catastrophe[i].Seed(seed, r, rng.Catastrophes)
 		s.survey[i].Seed(seed, r, rng.Survey)

@@ -1,0 +1,154 @@
+package main
+
+import (
+	"errors"
+	"fmt"
+	"io"
+	"path/filepath"
+	"strings"
+
+	"ebbline/pva"
+	"ebbline/pva/assess"
+	"ebbline/pva/casefile"
+	"ebbline/pva/rates"
+	"ebbline/reports"
+	"ebbline/reports/text"
+
+	"github.com/spf13/cobra"
+)
+
+type assessOptions struct {
+	caseInput
+	outputs
+	workers        int
+	failAboveLimit bool
+	exact, noExact bool
+}
+
+func newAssess(a *app) *cobra.Command {
+	o := &assessOptions{}
+	cmd := &cobra.Command{
+		Use:   "assess CASE",
+		Short: "Assess a case: the risk, the verdict and the report workbook",
+		Long: `Simulates the case with and without the take, prints the answer, and writes the
+report workbook beside the case (or to --out).
+
+` + statusHelp,
+		Example: `  ebbline assess --example marsh-heron
+  ebbline assess heron.toml --set harvest.control.take=4 --json -`,
+		Args: cobra.MaximumNArgs(1),
+		RunE: func(_ *cobra.Command, args []string) error { return a.assess(o, args) },
+	}
+	o.caseInput.addFlags(cmd.Flags())
+	o.outputs.addFlags(cmd.Flags())
+	cmd.Flags().IntVar(&o.workers, "workers", 0, "how many replicates run side by side (default: all cores)")
+	cmd.Flags().BoolVar(&o.exact, "exact", false, "add the exact answer even where it is dear")
+	cmd.Flags().BoolVar(&o.noExact, "no-exact", false, "leave the exact answer out")
+	cmd.Flags().BoolVar(&o.failAboveLimit, "fail-above-limit", false, "end with exit status 3 if the verdict is above the limit")
+	return cmd
+}
+
+func (a *app) assess(o *assessOptions, args []string) error {
+	c, name, err := o.read(args)
+	if err != nil {
+		return err
+	}
+	if o.workers < 0 {
+		return badInputf("--workers %d: give 1 or more", o.workers)
+	}
+	wish := assess.ExactIfCheap
+	switch {
+	case o.exact && o.noExact:
+		return badInputf("give either --exact or --no-exact")
+	case o.exact:
+		wish = assess.ExactAlways
+	case o.noExact:
+		wish = assess.ExactNever
+	}
+	if len(c.Uncertain) > 0 {
+		return badInput{fmt.Errorf("%s: %w", name, assess.ErrUncertain)}
+	}
+	book := reportPath(o.book, name)
+	if err := o.outputs.check(book, c, name); err != nil {
+		return err
+	}
+	ctx, stop := interruptible()
+	defer stop()
+	progress, finish := progressBar(a.errs, c.Run.Replicates, o.quiet)
+	result, runErr := assess.Run(ctx, c, assess.Options{Workers: o.workers, Progress: progress, Exact: wish})
+	finish()
+	if result == nil {
+		if runErr != nil && ctx.Err() != nil {
+			return errors.New("interrupted before any replicate was complete; nothing was written")
+		}
+		return runErr
+	}
+	report := reports.Build(result, meta(c, name, "assess", o.example))
+	if err := o.write(a, report, result, book); err != nil {
+		return err
+	}
+	if !o.quiet {
+		a.say(o.json == "-", text.Answer(report, result, isTerminal(a.out))+"Report: "+book+"\n")
+	}
+	switch {
+	case runErr != nil && ctx.Err() != nil:
+		return fmt.Errorf("interrupted: the report holds the %d replicates that were complete; run again for all of them", result.Replicates)
+	case runErr != nil:
+		return runErr
+	case result.Unreliable:
+		return errors.New("simulation and exact answer disagree beyond chance: do not rely on this report")
+	case o.failAboveLimit && result.Verdict == pva.AboveLimit:
+		return errAboveLimit
+	}
+	return nil
+}
+
+// say prints text for people: on standard output, or on standard error where
+// standard output carries JSON.
+func (a *app) say(jsonOut bool, s string) {
+	w := a.out
+	if jsonOut {
+		w = a.errs
+	}
+	io.WriteString(w, s)
+}
+
+// meta is what the report says about this run: a command line that repeats it
+// from the case text that the report carries.
+func meta(c *pva.Case, name, command, example string) reports.Meta {
+	line := "ebbline " + command + " "
+	if example != "" {
+		line += "--example " + example
+	} else {
+		line += quoteArg(filepath.Base(name))
+	}
+	for _, e := range c.Entries() {
+		if e.Origin == pva.FromOverride {
+			switch e.Path {
+			case "run.replicates":
+				line += " --replicates " + e.Value.String()
+			case "run.seed":
+				line += " --seed " + e.Value.String()
+			default:
+				line += " --set " + quoteArg(c.Display(e.Path)+"="+e.Value.String())
+			}
+		}
+	}
+	meta := reports.Meta{Version: pva.Version, Command: line, CaseText: string(casefile.Write(c)), CaseFile: name}
+	if m, faults := rates.New(c); len(faults) == 0 {
+		if m.BirthCrowding.Form != rates.None {
+			meta.BirthsScale = pva.Optional{Value: m.BirthCrowding.L, Set: true}
+		}
+		if m.DeathCrowding.Form != rates.None {
+			meta.DeathsScale = pva.Optional{Value: m.DeathCrowding.L, Set: true}
+		}
+	}
+	return meta
+}
+
+func quoteArg(s string) string {
+	if strings.ContainsAny(s, " \t'\"$`\\&|;<>()*?[]{}!#~") {
+		return "'" + strings.ReplaceAll(s, "'", `'\''`) + "'"
+	}
+	return s
+}

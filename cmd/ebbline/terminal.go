@@ -1,0 +1,48 @@
+package main
+
+import (
+	"context"
+	"io"
+	"os"
+	"os/signal"
+	"syscall"
+
+	"github.com/vbauerster/mpb/v8"
+	"github.com/vbauerster/mpb/v8/decor"
+	"golang.org/x/term"
+)
+
+// isTerminal says whether a writer is a terminal that a person looks at.
+func isTerminal(w io.Writer) bool {
+	f, ok := w.(*os.File)
+	return ok && term.IsTerminal(int(f.Fd()))
+}
+
+// interruptible is a context that ends at the first Ctrl-C or TERM, so that
+// what is complete is kept; the second one ends the program at once.
+func interruptible() (context.Context, func()) {
+	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
+	go func() {
+		<-ctx.Done()
+		stop()
+	}()
+	return ctx, stop
+}
+
+// progressBar shows how many of total replicates are done, on a terminal only.
+// The first result is called after each block from any worker; the second ends
+// the bar.
+func progressBar(w io.Writer, total int64, quiet bool) (func(done int64), func()) {
+	if quiet || !isTerminal(w) {
+		return nil, func() {}
+	}
+	p := mpb.New(mpb.WithOutput(w), mpb.WithWidth(40))
+	bar := p.New(total, mpb.BarStyle().Lbound("[").Filler("=").Tip(">").Padding(" ").Rbound("]"),
+		mpb.BarRemoveOnComplete(),
+		mpb.PrependDecorators(decor.Name("replicates ")),
+		mpb.AppendDecorators(decor.CountersNoUnit("%d of %d"), decor.Name("  "), decor.OnComplete(decor.AverageETA(decor.ET_STYLE_GO), "")))
+	return func(done int64) { bar.SetCurrent(done) }, func() {
+		bar.Abort(true)
+		p.Wait()
+	}
+}
