@@ -97,6 +97,14 @@ func (f Fraction) Draw(e float64) float64 {
 	return portable.Logistic(f.U + float64(f.V*e))
 }
 
+// Survive is 1 - Draw(e), with full relative accuracy where almost all die.
+func (f Fraction) Survive(e float64) float64 {
+	if f.V == 0 {
+		return 1 - f.Mean
+	}
+	return portable.Logistic(-f.U - float64(f.V*e))
+}
+
 // logitMoments are the first two moments of the logit-normal law by the
 // trapezoid rule on -9 to 9, which converges geometrically for a function
 // analytic in a strip (Trefethen & Weideman 2014, SIAM Review 56:385): here to

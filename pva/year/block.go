@@ -23,6 +23,7 @@ type block struct {
 	n        [lanesMax]int64
 	birth    [lanesMax]float64 // this year's births per head, before crowding
 	death    [lanesMax]float64 // this year's deaths per head, before crowding
+	survival [lanesMax]float64 // pulse: this year's chance of survival, where it is drawn as such
 	eBirth   [lanesMax]float64 // the weather's normal series
 	eDeath   [lanesMax]float64
 	seen     [][lanesMax]float64 // last survey, one a harvest rule

@@ -26,6 +26,13 @@ func pulsePasses(m *rates.Model) []pass {
 
 // survive draws S ~ Binomial(N, exp(-d)), the crowding of deaths seen at N.
 func survive(m *rates.Model) pass {
+	if survivalDrawn(m) {
+		return func(b *block, _ int) {
+			for i := 0; i < b.lanes; i++ {
+				b.n[i] = rng.Binomial(&b.demography[i], b.n[i], b.survival[i])
+			}
+		}
+	}
 	if m.DeathCrowding.Form == rates.None {
 		return func(b *block, _ int) {
 			for i := 0; i < b.lanes; i++ {

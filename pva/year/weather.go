@@ -25,17 +25,35 @@ func weatherPasses(m *rates.Model) []pass {
 	} else {
 		out = append(out, func(b *block, y int) { fill(&b.birth, birth.Mean*m.BirthCalendar[y-1]) })
 	}
-	if death.Varies() {
+	switch {
+	case survivalDrawn(m):
+		out = append(out, func(b *block, _ int) {
+			for i := 0; i < b.lanes; i++ {
+				b.survival[i] = death.Fraction.Survive(b.eDeath[i])
+			}
+		})
+	case death.Varies():
 		out = append(out, func(b *block, y int) {
 			f := m.DeathCalendar[y-1]
 			for i := 0; i < b.lanes; i++ {
 				b.death[i] = times(death.Draw(b.eDeath[i]), f)
 			}
 		})
-	} else {
+	default:
 		out = append(out, func(b *block, y int) { fill(&b.death, times(death.Mean(), m.DeathCalendar[y-1])) })
 	}
 	return out
+}
+
+// survivalDrawn says whether the year's chance of survival is the drawn fraction
+// itself, with nothing between that would need its rate.
+func survivalDrawn(m *rates.Model) bool {
+	for _, f := range m.DeathCalendar {
+		if f != 1 {
+			return false
+		}
+	}
+	return m.Case.Births.Breeding == "pulse" && m.Death.IsFraction && m.DeathCrowding.Form == rates.None
 }
 
 // times is a product in which no deaths at all (factor 0) win over a death
