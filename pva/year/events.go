@@ -1,6 +1,8 @@
 package year
 
 import (
+	"math"
+
 	"ebbline/pva/rates"
 	"ebbline/rng"
 )
@@ -81,9 +83,15 @@ func (f *flow) events(b *block, i int, t float64, streams []rate, always bool, c
 		for k := range streams {
 			other += streams[k].at(n)
 		}
+		before := t
 		t += rng.Exponential(s) / (sum + other)
 		if !(t < 1) { // also where nothing can happen any more: a rate of 0
 			t = 1
+		}
+		for k := range streams {
+			streams[k].wait(n, t-before)
+		}
+		if t == 1 {
 			break
 		}
 		if *count++; *count > maxEvents {
@@ -107,13 +115,29 @@ func (f *flow) events(b *block, i int, t float64, streams []rate, always bool, c
 		if n > top {
 			if n > b.program.stopAbove {
 				b.outgrow(i)
+				for k := range streams {
+					streams[k].blocked = 0
+				}
 				return t, true
 			}
 			break
 		}
 	}
 	b.n[i] = n
+	for k := range streams {
+		if st := &streams[k]; st.blocked > 0 {
+			b.row.Shortfall[i] += rng.Poisson(&b.taking[i], math.Min(st.blocked, most))
+			st.blocked = 0
+		}
+	}
 	return t, true
+}
+
+// wait lets a take that runs but may remove nothing run up its shortfall.
+func (r *rate) wait(n int64, dt float64) {
+	if !r.add && n <= r.leave && r.runs(n) {
+		r.blocked += float64((r.perYear + float64(r.perHead*float64(n))) * dt)
+	}
 }
 
 // uniform is a word as a uniform number on [0, 1).
@@ -182,9 +206,9 @@ func (f *flow) together(b *block, y int) {
 	}
 }
 
-// at is the stream's rate at n.
+// at is the rate of the stream's events at n.
 func (r *rate) at(n int64) float64 {
-	if !r.runs(n) {
+	if !r.runs(n) || !r.add && n <= r.leave {
 		return 0
 	}
 	return r.perYear + float64(r.perHead*float64(n))
@@ -211,9 +235,6 @@ func pick(b *block, i int, streams []rate, n int64, u float64) int64 {
 		return 1
 	case st.extra:
 		b.row.Extra[i]++
-	case n <= st.leave:
-		b.row.Shortfall[i]++
-		return 0
 	default:
 		b.row.Take[i]++
 	}

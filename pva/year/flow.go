@@ -102,6 +102,9 @@ func throughStreams(m *rates.Model) []stream {
 type rate struct {
 	*stream
 	perYear, perHead float64
+	// blocked is the number of removals expected in the time that a lane spent
+	// at or below leave while the take ran: its shortfall is Poisson of it.
+	blocked float64
 }
 
 // pass runs the year of every lane.
@@ -111,7 +114,7 @@ func (f *flow) pass(always bool) pass {
 		open := buffer[:0]
 		for s := range f.streams {
 			if st := &f.streams[s]; st.scheduled[y-1] {
-				open = append(open, rate{st, st.perYear(y), st.perHead(y)})
+				open = append(open, rate{stream: st, perYear: st.perYear(y), perHead: st.perHead(y)})
 			}
 		}
 		if len(open) == 0 && !always {

@@ -43,8 +43,9 @@ func linear(t testing.TB, lambda, mu, n0 float64, years int, more ...any) *pva.C
 // TestLinearBirthDeath holds the flow year against the linear birth-death
 // process: extinction by time t and the law of N(t) are D. G. Kendall 1948,
 // Ann. Math. Statist. 19:1-15; mean and variance N. T. J. Bailey 1964, The
-// Elements of Stochastic Processes, ch. 8. The same for every event, for auto,
-// and for sub-steps, whose transition is exact where rates don't change.
+// Elements of Stochastic Processes, ch. 8. The same for every event (as
+// auto takes them here) and for sub-steps, whose transition is exact where rates
+// don't change.
 // The last two rows are pure death and pure birth (G. U. Yule 1925).
 func TestLinearBirthDeath(t *testing.T) {
 	rows := []struct {
@@ -65,7 +66,7 @@ func TestLinearBirthDeath(t *testing.T) {
 		{0.2, 0, 5, 2, 0, 5.436563657, 9.341548541, map[int64]float64{2: 0.13533528, 3: 0.17109643, 5: 0.13673219, 10: 0.031049375}},
 	}
 	for _, r := range rows {
-		for _, substeps := range []string{"events", "auto", "3"} {
+		for _, substeps := range []string{"events", "3"} {
 			name := fmt.Sprintf("births %v deaths %v from %v over %d (%s)", r.lambda, r.mu, r.n0, r.years, substeps)
 			c := linear(t, r.lambda, r.mu, r.n0, r.years, "run.substeps", substeps)
 			tally := run(t, c, replicates, 2)
@@ -168,7 +169,7 @@ func TestCrowdedChains(t *testing.T) {
 		{"take of 2 at the end of a year", 50, 0, join(deaths(.5, .3, 50), []any{"harvest.1.rule", "constant", "harvest.1.take", 2, "harvest.1.when", "end"}), map[int]float64{20: 0.034911586, 50: 0.31353446}},
 		{"take of 4 at the end, 25 left", 50, 5, join(deaths(.5, .3, 50), []any{"harvest.1.rule", "constant", "harvest.1.take", 4, "harvest.1.leave", 25, "harvest.1.when", "end"}), map[int]float64{20: 0.003131943, 50: 0.017624988}},
 	}
-	const n = 20000
+	const n = 12000
 	for _, r := range rows {
 		c := caseOf(t, append([]any{"question.threshold", r.q, "question.horizon", 50, "question.watch", "always", "start.abundance", r.n0, "births.breeding", "flow", "run.seed", 5}, r.pairs...)...)
 		tally := run(t, c, n, 2)
