@@ -138,7 +138,11 @@ type Assessment struct {
 	ToDecide      int64 // about how many replicates would settle an undecided verdict
 	Substeps      *SubstepBound
 	Closed        []ClosedForm // published formulas beside the answer
-	Warnings      []Warning
+	// Uncertainty is what the draws of uncertain inputs say, nil where none is
+	// uncertain. Where it is there, the intervals of probabilities and of
+	// differences of risks are intervals between draws.
+	Uncertainty *Uncertainty
+	Warnings    []Warning
 }
 
 // ClosedForm is a published formula that applies to the case or to a part of

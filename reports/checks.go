@@ -19,6 +19,7 @@ func checksPart(a *pva.Assessment, s scores) (Part, bool) {
 	if t := closedTable(a); t != nil {
 		p.Tables = append(p.Tables, t)
 	}
+	p.Tables = append(p.Tables, yardstickTables(a)...)
 	if t := batchesTable(a, s); t != nil {
 		p.Tables = append(p.Tables, t)
 	}

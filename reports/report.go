@@ -140,6 +140,7 @@ func Build(a *pva.Assessment, meta Meta) *Report {
 		Provenance: ProvenanceOf(c),
 	}
 	r.VerdictText = verdictText(a)
+	r.carryUncertainty(a)
 	r.ShortCautions, r.Cautions = Cautions(c)
 	for _, w := range a.Warnings {
 		r.Warnings = append(r.Warnings, w.String())
@@ -149,6 +150,7 @@ func Build(a *pva.Assessment, meta Meta) *Report {
 	if len(a.Options) > 0 {
 		r.Parts = append(r.Parts, optionsPart(a, z))
 	}
+	r.Parts = append(r.Parts, uncertaintyParts(a)...)
 	if len(a.Drivers) > 0 {
 		r.Parts = append(r.Parts, driversPart(a, z))
 	}

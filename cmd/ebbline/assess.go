@@ -65,9 +65,6 @@ func (a *app) assess(o *assessOptions, args []string) error {
 	case o.noExact:
 		wish = assess.ExactNever
 	}
-	if len(c.Uncertain) > 0 {
-		return badInput{fmt.Errorf("%s: %w", name, assess.ErrUncertain)}
-	}
 	book := reportPath(o.book, name)
 	if err := o.outputs.check(book, c, name); err != nil {
 		return err
@@ -81,9 +78,14 @@ func (a *app) assess(o *assessOptions, args []string) error {
 		if runErr != nil && ctx.Err() != nil {
 			return errors.New("interrupted before any replicate was complete; nothing was written")
 		}
+		if faults := (pva.Faults)(nil); errors.As(runErr, &faults) {
+			return badInput{fmt.Errorf("%s: %w", name, runErr)} // laws of uncertain inputs that cannot be
+		}
 		return runErr
 	}
-	report := reports.Build(result, meta(c, name, "assess", o.example))
+	about := meta(c, name, "assess", o.example)
+	about.Command += exactFlag(wish)
+	report := reports.Build(result, about)
 	if err := o.write(a, report, result, book); err != nil {
 		return err
 	}

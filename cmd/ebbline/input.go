@@ -11,6 +11,7 @@ import (
 	"ebbline/pva"
 	"ebbline/pva/casefile"
 	"ebbline/pva/casefile/examples"
+	"ebbline/pva/casefile/sheet"
 
 	"github.com/spf13/pflag"
 )
@@ -53,11 +54,19 @@ func (in *caseInput) read(args []string) (c *pva.Case, name string, err error) {
 		return nil, "", badInputf("name a case file, or use --example NAME (%s)", strings.Join(examples.Names(), ", "))
 	default:
 		name = args[0]
-		if data, err = readBounded(name, largestCase); err != nil {
+		most := int64(largestCase)
+		if isWorkbook(name) {
+			most = sheet.LargestFile
+		}
+		if data, err = readBounded(name, most); err != nil {
 			return nil, "", badInput{err}
 		}
 	}
-	c, faults := casefile.Read(name, data)
+	readCase := casefile.Read
+	if isWorkbook(name) {
+		readCase = sheet.Read
+	}
+	c, faults := readCase(name, data)
 	if len(faults) > 0 {
 		return nil, "", faults
 	}
@@ -72,6 +81,9 @@ func (in *caseInput) read(args []string) (c *pva.Case, name string, err error) {
 	}
 	return c, name, nil
 }
+
+// isWorkbook says whether a file is taken as a workbook: by its ending.
+func isWorkbook(name string) bool { return strings.EqualFold(filepath.Ext(name), ".xlsx") }
 
 func (in *caseInput) settings() ([]pva.Setting, error) {
 	var out []pva.Setting
@@ -128,10 +140,25 @@ func plainPathError(err error) error {
 }
 
 // reportPath is where the workbook goes: --out, or beside the case under its
-// name; an example's report goes to the current folder.
+// name; an example's report goes to the current folder. The report of a case
+// that is a workbook itself has "-report" in its name.
 func reportPath(out, caseName string) string {
 	if out != "" {
 		return out
 	}
-	return strings.TrimSuffix(caseName, filepath.Ext(caseName)) + ".xlsx"
+	stem := strings.TrimSuffix(caseName, filepath.Ext(caseName))
+	if isWorkbook(caseName) {
+		stem += "-report"
+	}
+	return stem + ".xlsx"
+}
+
+// sameFile says whether two names are one file.
+func sameFile(a, b string) bool {
+	x, err := os.Stat(a)
+	if err != nil {
+		return false
+	}
+	y, err := os.Stat(b)
+	return err == nil && os.SameFile(x, y)
 }

@@ -8,6 +8,7 @@ import (
 
 	"ebbline/pva/casefile"
 	"ebbline/pva/casefile/examples"
+	"ebbline/pva/casefile/sheet"
 	"ebbline/reports"
 
 	"github.com/spf13/cobra"
@@ -19,10 +20,14 @@ func newNew(a *app) *cobra.Command {
 		Use:   "new [FILE]",
 		Short: "Write a commented starter case",
 		Long: `Writes a case file to begin from, with every key explained: to FILE, or to
-standard output without one. The population in it is invented.`,
-		Example: "  ebbline new mycase.toml",
+standard output without one. A name that ends in .xlsx gives a workbook, with
+lists to choose from. The population in it is invented.`,
+		Example: "  ebbline new mycase.toml\n  ebbline new mycase.xlsx",
 		Args:    cobra.MaximumNArgs(1),
 		RunE: func(_ *cobra.Command, args []string) error {
+			if len(args) > 0 && isWorkbook(args[0]) {
+				return a.writeStarter(args[0], force)
+			}
 			return a.writeText(args, 0, casefile.Starter(), force, "Fill it in, then: ebbline check ")
 		},
 	}
@@ -81,6 +86,20 @@ func (a *app) writeText(args []string, at int, data []byte, force bool, next str
 	if !strings.EqualFold(filepath.Ext(path), ".toml") {
 		return badInputf("%s: a case file ends in .toml", path)
 	}
+	return a.writeCase(path, data, force, next)
+}
+
+// writeStarter writes the starter workbook.
+func (a *app) writeStarter(path string, force bool) error {
+	data, err := sheet.Starter()
+	if err != nil {
+		return err
+	}
+	return a.writeCase(path, data, force, "Fill it in, then: ebbline check ")
+}
+
+// writeCase saves a case to a new file and says what may come next.
+func (a *app) writeCase(path string, data []byte, force bool, next string) error {
 	if _, err := os.Stat(path); err == nil && !force {
 		return badInputf("%s exists; use --force to replace it", path)
 	}

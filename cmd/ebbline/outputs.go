@@ -13,14 +13,15 @@ import (
 
 // outputs are the files a command writes.
 type outputs struct {
-	book, json, csv string
-	quiet, force    bool
+	book, json, csv, figures string
+	quiet, force             bool
 }
 
 func (o *outputs) addFlags(f flagSet) {
 	f.StringVar(&o.book, "out", "", "write the report workbook to `FILE.xlsx` (default: beside the case)")
 	f.StringVar(&o.json, "json", "", "write the result as JSON to `FILE` (- is standard output)")
 	f.StringVar(&o.csv, "csv", "", "write CSV tables into the folder `DIR`")
+	f.StringVar(&o.figures, "figures", "", "draw the report's charts as PNG and SVG into the folder `DIR`")
 	f.BoolVar(&o.quiet, "quiet", false, "print nothing but errors")
 	f.BoolVar(&o.force, "force", false, "overwrite files that are not this case's own report")
 }
@@ -36,8 +37,14 @@ func (o *outputs) check(book string, c *pva.Case, name string) error {
 	if !strings.EqualFold(filepath.Ext(book), ".xlsx") {
 		return badInputf("%s: the report is a workbook; name it with .xlsx", book)
 	}
+	if sameFile(book, name) {
+		return badInputf("%s is the case itself; name the report with --out FILE.xlsx", book)
+	}
 	if err := reports.CheckTarget(book, reports.TitleOf(c, name), o.force); err != nil {
 		return badInput{err}
+	}
+	if err := o.checkFigures(); err != nil {
+		return err
 	}
 	if o.json != "" && o.json != "-" {
 		if err := o.fresh(o.json); err != nil {
@@ -74,6 +81,9 @@ func (o *outputs) write(a *app, r *reports.Report, result *pva.Assessment, book 
 		return err
 	}
 	if err := reports.Save(book, data); err != nil {
+		return err
+	}
+	if err := o.writeFigures(r); err != nil {
 		return err
 	}
 	if o.json != "" {

@@ -3,7 +3,7 @@
 // same replicates; the exact answer beside them where it is cheap; the verdict
 // and the doubts. The command line, sweeps and tests call it.
 //
-// It refuses a case with uncertain inputs, which need outer draws.
+// A case with uncertain inputs is assessed draw by draw of them (package draws).
 package assess
 
 import (
@@ -39,14 +39,14 @@ const (
 	ExactNever
 )
 
-// ErrUncertain is returned for a case with [[uncertain]] tables.
-var ErrUncertain = errors.New("the case marks inputs as uncertain ([[uncertain]]), which `assess` cannot carry into the risk yet: remove those tables to assess the case at its stated values")
+// ErrUncertain is returned by UntilDecided for a case with [[uncertain]] tables.
+var ErrUncertain = errors.New("the case marks inputs as uncertain ([[uncertain]]), and more replicates of the same draws may never settle its verdict: assess it with more draws (run.draws, and replicates in proportion) instead")
 
 // Run assesses a case. If the context ends it returns what is complete, with
 // the context's error; with nothing complete the assessment is nil.
 func Run(ctx context.Context, c *pva.Case, opt Options) (*pva.Assessment, error) {
 	if len(c.Uncertain) > 0 {
-		return nil, ErrUncertain
+		return runUncertain(ctx, c, opt)
 	}
 	set, err := variants(c)
 	if err != nil {
@@ -126,7 +126,7 @@ func variants(c *pva.Case) ([]variant, error) {
 		if len(faults) > 0 {
 			return nil, fmt.Errorf("without %s: %w", d.name, faults)
 		}
-		out = append(out, variant{role: aDriver, name: d.name, c: dc})
+		out = append(out, variant{role: aDriver, name: d.name, set: d.set, c: dc})
 	}
 	for i := range out {
 		m, faults := rates.New(out[i].c)

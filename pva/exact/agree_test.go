@@ -49,7 +49,7 @@ func TestPulseWithEverything(t *testing.T) {
 			}
 			points := 21
 			if name == "all breed, one weather, error of the take" {
-				points = 401 // births capped at one a head make a bend in the weather
+				points = 201 // births capped at one a head make a bend in the weather
 			}
 			agree(t, keys, 50, points, tolerance)
 		})

@@ -65,7 +65,7 @@ func TestRationalAgainstUniformisation(t *testing.T) {
 			if !(off < test.most) {
 				t.Errorf("%+v, bound %v: %.2g apart", c, test.bound, off)
 			}
-			if !(math.Abs(mass-1) < 1e-13) {
+			if !(math.Abs(mass-1) < 1e-12) { // rounding of some thousand jumps
 				t.Errorf("%+v: mass %.17g", c, mass)
 			}
 		}

@@ -18,6 +18,7 @@ type plan struct {
 	// inexact says that something is integrated by quadrature or approximated,
 	// so that two runs are compared.
 	inexact bool
+	fixed   bool   // the largest state was given
 	reason  string // why there is no exact answer
 }
 
@@ -176,7 +177,7 @@ func (p *plan) nodes(s setting) int {
 func (p *plan) chooseTop(opt Options) {
 	c := p.m.Case
 	if opt.Top > 0 {
-		p.first.top = opt.Top
+		p.first.top, p.fixed = opt.Top, true
 		return
 	}
 	if top, ok := ceilingTop(c); ok && top <= reachMost && top < c.Run.StopAbove {
@@ -188,6 +189,13 @@ func (p *plan) chooseTop(opt Options) {
 		return
 	}
 	all, risk := reach(p.m)
+	if c.Ceiling.Set {
+		// What is above the ceiling comes back to it at the end of the year: it
+		// matters only if it fell below it again before. The run measures that.
+		k := math.Floor(c.Ceiling.Value)
+		most := math.Max(startReach(c), math.Max(2*k, k+12*math.Sqrt(k)+40))
+		all, risk = math.Min(all, most), math.Min(risk, most)
+	}
 	limit := math.Inf(1)
 	if c.Run.StopAbove < reachMost {
 		limit = math.Floor(c.Run.StopAbove)

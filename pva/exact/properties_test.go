@@ -191,3 +191,36 @@ func TestCost(t *testing.T) {
 		t.Errorf("cost %v, of ten times the years %v, with memory %v", a, longer, dense)
 	}
 }
+
+// The stated error covers the true one where the states or the points are too
+// few on purpose, and no operations are left to do better.
+func TestStatedErrorCovers(t *testing.T) {
+	for name, c := range map[string]struct {
+		keys set
+		opt  Options
+	}{
+		"few states, flow":  {always(20, 3, 0.5, 0.4, 30, "deaths"), Options{Top: 42}},
+		"few states, pulse": {pulse(20, 3, 40, 0.5, 0.35).with(set{"births.crowding.form": "linear", "births.crowding.scale": 150}), Options{Top: 45}},
+		"few points":        {pulse(60, 20, 20, 0.5, 0.3).with(set{"births.year_sd": 0.3, "deaths.year_sd": 0.15, "ceiling.abundance": 100}), Options{Order: 3}},
+		"few points, flow":  {flow(30, 10, 10, 0.5, 0.5).with(set{"births.year_sd": 0.3, "ceiling.abundance": 60}), Options{Order: 2}},
+	} {
+		good := answer(t, c.keys)
+		m := model(t, c.keys)
+		ops, _, _ := CostWith(m, c.opt)
+		c.opt.Most = ops
+		a, err := Solve(context.Background(), m, c.opt)
+		if err != nil || a.Reason != "" {
+			t.Fatal(err, a.Reason)
+		}
+		off := 0.0
+		for y := range a.Fallen {
+			off = math.Max(off, math.Abs(a.Fallen[y]-good.Fallen[y]))
+		}
+		if off < 1e-7 {
+			t.Errorf("%s: off by %.2g only: the case shows nothing", name, off)
+		}
+		if off > a.Error+good.Error {
+			t.Errorf("%s: off by %.3g, stated error %.3g", name, off, a.Error)
+		}
+	}
+}

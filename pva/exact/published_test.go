@@ -98,7 +98,7 @@ func checkCase(t *testing.T, keys set, rows []row) {
 		if last == nil {
 			s := newPlan(m, Options{}).first
 			s.top = max(s.top, wideTop(rows))
-			s.order, s.bound = 3*s.order, 3
+			s.order, s.bound = 2*s.order, 4
 			if m.Case.Births.Breeding == "pulse" {
 				s.order = 64 // the ceiling makes a kink in the mean of a year
 			}

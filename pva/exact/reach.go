@@ -417,10 +417,14 @@ func ceilingTop(c *pva.Case) (float64, bool) {
 			}
 		}
 	}
-	start := c.Start.Abundance + 1
-	if c.Start.CV > 0 {
-		f := factor{rates.NewLogNormal(1, c.Start.CV).Sigma}
-		start = c.Start.Abundance*math.Exp(7*f.s-f.s*f.s/2) + 1
+	return math.Max(top, startReach(c)), true
+}
+
+// startReach is a population beyond which the first one hardly ever is.
+func startReach(c *pva.Case) float64 {
+	if c.Start.CV == 0 {
+		return c.Start.Abundance + 1
 	}
-	return math.Max(top, start), true
+	f := factor{rates.NewLogNormal(1, c.Start.CV).Sigma}
+	return c.Start.Abundance*math.Exp(7*f.s-f.s*f.s/2) + 1
 }

@@ -40,7 +40,7 @@ type run struct {
 
 	fallen, backFallen float64 // gone from the second and third laws
 	outgrown, outAlive float64 // passed stop_above: of all, of those not fallen
-	lost, lumped       float64 // put back at top: of all, and under a ceiling though a later rule might see it
+	lost               float64 // of all, put back at top for good
 }
 
 // found is what a run computes.
@@ -118,7 +118,7 @@ func (r *run) solve(ctx context.Context) (*found, error) {
 		r.census(b, out)
 	}
 	out.last = b
-	out.cutting = r.backFallen + r.lumped
+	out.cutting = r.backFallen
 	return out, nil
 }
 
@@ -147,10 +147,10 @@ func (r *run) start() batch {
 }
 
 // settle deals with what went beyond top. Where that is beyond stop_above too
-// it is outgrown. Under a ceiling it is put at top, since the ceiling will cut
-// it there anyhow; otherwise it is lost to the first law, and is put back at
-// top in the third.
-func (r *run) settle(b batch, over []float64, exactCut bool) {
+// it is outgrown. Otherwise it is put back at top: in the first law with a note
+// of how much, in the second by moving it to the third, unless it is to be cut
+// to the ceiling before anything else can see it.
+func (r *run) settle(b batch, over []float64, unseen bool) {
 	outgrows := r.c.Run.StopAbove <= float64(r.top)+1
 	for i, x := range over {
 		over[i] = 0
@@ -163,19 +163,34 @@ func (r *run) settle(b batch, over []float64, exactCut bool) {
 		case outgrows && kind == 1:
 			r.outAlive += x
 		case outgrows:
-		case r.c.Ceiling.Set:
-			b[i][r.top] += x
-			if kind == 1 && !exactCut {
-				r.lumped += math.Abs(x)
-			}
-		case kind == 0:
-			r.lost += math.Abs(x)
-			b[i][r.top] += x
-		case kind == 1:
+		case kind == 1 && !unseen:
 			b[i+1][r.top] += x
 		default:
 			b[i][r.top] += x
+			if kind == 0 && !r.c.Ceiling.Set {
+				r.lost += math.Abs(x)
+			}
 		}
+	}
+}
+
+// cutTo is the ceiling. What was put back at top and is cut to the ceiling
+// would have been cut to it from above top too, since a larger population stays
+// the larger under the same chances: it rejoins the second law.
+func (r *run) cutTo(b batch) {
+	most := int(math.Min(math.Floor(r.c.Ceiling.Value), float64(r.top)))
+	for _, v := range b {
+		for n := most + 1; n <= r.top; n++ {
+			v[most] += v[n]
+			v[n] = 0
+		}
+	}
+	if math.Floor(r.c.Ceiling.Value) > float64(r.top) {
+		return
+	}
+	for i := 1; i < len(b); i += perPoint {
+		b[i][most] += b[i+1][most]
+		b[i+1][most] = 0
 	}
 }
 

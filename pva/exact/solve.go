@@ -68,44 +68,45 @@ func Solve(ctx context.Context, m *rates.Model, opt Options) (*pva.ExactAnswer, 
 	return p.solve(ctx)
 }
 
-// solve runs the plan at two orders of quadrature, and at higher ones or with
-// more states while the stated error is too large and there are operations left.
+// solve runs the plan at two orders of quadrature, with more states or at higher
+// orders while the stated error is too large and there are operations left.
 func (p *plan) solve(ctx context.Context) (*pva.ExactAnswer, error) {
-	var last *found
-	var best *pva.ExactAnswer
+	var last *found // the run at the order below, on the same states
 	spent := 0.0
-	s := p.first
-	for level := 0; ; level++ {
+	for s := p.first; ; {
 		spent += p.ops(s)
 		f, err := newRun(p.m, s).solve(ctx)
 		if err != nil {
 			return nil, fmt.Errorf("exact: %w", err)
 		}
-		if last != nil || !p.inexact {
-			gap := 0.0
-			if last != nil {
-				gap = difference(f.fallen, last.fallen)
-			}
-			best = p.answer(s, f, gap)
-			if best.Error <= p.goal/2 {
-				return best, nil
+		if f.cutting > p.goal/4 && !p.fixed {
+			wider := s
+			wider.top += s.top/4 + 10
+			if p.affords(wider, spent) {
+				s, last = wider, nil
+				continue
 			}
 		}
-		last = f
-		next := p.finer(s)
-		if f.cutting > p.goal/4 { // the states, not the points, are too few
-			next = s
-			next.top += s.top/4 + 10
-			last = nil
+		gap := 0.0
+		if last != nil {
+			gap = difference(f.fallen, last.fallen)
+		} else if p.inexact {
+			gap = 1 // nothing to compare with yet
 		}
-		if p.memory(next) > mostBytes || (best != nil && spent+p.ops(next) > p.most) || level > 12 {
-			if best == nil {
-				best = p.answer(s, f, 1)
-			}
-			return best, nil
+		a := p.answer(s, f, gap)
+		finer := p.finer(s)
+		if a.Error <= p.goal/2 || !p.inexact || !p.affords(finer, spent) {
+			return a, nil
 		}
-		s = next
+		s, last = finer, f
 	}
+}
+
+// affords says whether one more run fits into the operations and the memory,
+// spent operations already done. Orders and states grow by at least a quarter
+// each time, so that the runs come to an end.
+func (p *plan) affords(s setting, spent float64) bool {
+	return p.memory(s) <= mostBytes && spent+p.ops(s) <= p.most
 }
 
 func difference(a, b []float64) float64 {

@@ -31,13 +31,7 @@ func (r *run) year(ctx context.Context, y int, b batch) batch {
 	out = r.actions(ctx, y, "end", out)
 	r.outgrow(out)
 	if r.c.Ceiling.Set {
-		most := int(math.Min(math.Floor(r.c.Ceiling.Value), float64(r.top)))
-		for _, v := range out {
-			for n := most + 1; n <= r.top; n++ {
-				v[most] += v[n]
-				v[n] = 0
-			}
-		}
+		r.cutTo(out)
 	}
 	if r.always {
 		r.look(out)
@@ -51,8 +45,8 @@ func (r *run) year(ctx context.Context, y int, b batch) batch {
 // lastAct says that in year y nothing between births and the ceiling can see
 // how far above the ceiling N is.
 func (r *run) lastAct(y int) bool {
-	if r.c.Births.Breeding == "flow" {
-		return false // within the year N may come down again by itself
+	if !r.c.Ceiling.Set || r.c.Births.Breeding == "flow" {
+		return false // within a flow year N may come down again by itself
 	}
 	for j := range r.m.Takes {
 		if t := &r.m.Takes[j]; t.Rule.When == "end" && t.Scheduled[y-1] {

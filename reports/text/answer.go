@@ -24,6 +24,7 @@ func Answer(r *reports.Report, a *pva.Assessment, chart bool) string {
 	if len(a.Options) > 0 {
 		b.WriteString("\n" + optionRows(a))
 	}
+	b.WriteString(uncertainty(a))
 	if d := driverWords(a); d != "" {
 		b.WriteString("\n" + wrap(d, "  ", 0))
 	}

@@ -26,7 +26,7 @@ func Fit(r *fit.Result, w *fit.Written) string {
 		b.WriteString("\n")
 	}
 	for _, d := range r.Doubts {
-		b.WriteString(wrap("Doubt: "+d.String(), "", 2))
+		b.WriteString(wrap("Warning: "+d.String(), "", 2))
 	}
 	if w != nil {
 		b.WriteString("\nHow the case was made\n")
@@ -34,7 +34,7 @@ func Fit(r *fit.Result, w *fit.Written) string {
 			b.WriteString(wrap(h, "  ", 2))
 		}
 		for _, d := range w.Doubts {
-			b.WriteString(wrap("Doubt: "+d.String(), "", 2))
+			b.WriteString(wrap("Warning: "+d.String(), "", 2))
 		}
 	}
 	b.WriteString("\n")

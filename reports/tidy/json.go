@@ -190,6 +190,7 @@ type document struct {
 	Options       []option     `json:"options,omitempty"`
 	Drivers       []driver     `json:"drivers,omitempty"`
 	Exact         *exactAnswer `json:"exact,omitempty"`
+	Uncertainty   *uncertainty `json:"uncertainty,omitempty"`
 	Unreliable    bool         `json:"unreliable,omitempty"`
 	Warnings      []string     `json:"warnings"`
 }
@@ -247,6 +248,7 @@ func JSON(a *pva.Assessment, version, command string) ([]byte, error) {
 	for _, w := range a.Warnings {
 		d.Warnings = append(d.Warnings, w.String())
 	}
+	d.carryUncertainty(a)
 	return indented(d)
 }
 
