@@ -14,6 +14,10 @@ import (
 // answer cannot both be right: at most one run in 10^9 would be so by chance.
 const disagree = 1e-9
 
+// substepsTooCoarse is the shift by sub-steps beyond which holding a simulated
+// count against the exact risk would say nothing.
+const substepsTooCoarse = 0.01
+
 // addExact puts the exact answer beside the case, its baseline and its options,
 // in that order, as long as their work, known beforehand and never timed, stays
 // within the budget; and holds each simulated count against it.
@@ -44,7 +48,11 @@ func addExact(ctx context.Context, a *pva.Assessment, set []variant, wish ExactW
 		if answer.Reason != "" {
 			continue
 		}
-		tail := exactTail(o.Risk, answer, rates.BoundSubsteps(v.model))
+		bound := rates.BoundSubsteps(v.model)
+		if bound != nil && bound.RiskBound > substepsTooCoarse {
+			continue // too wide a margin to hold one against the other; warned of
+		}
+		tail := exactTail(o.Risk, answer, bound)
 		if v.role == theCase {
 			a.ExactTail = tail
 		}

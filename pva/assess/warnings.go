@@ -6,14 +6,20 @@ import (
 
 	"ebbline/pva"
 	"ebbline/pva/rates"
+
+	"golang.org/x/text/language"
+	"golang.org/x/text/message"
 )
+
+// grouped writes numbers in groups of three, as the reports do.
+var grouped = message.NewPrinter(language.English)
 
 // Warnings are the doubts about a case that a reviewer would raise before any
 // replicate is run.
 func Warnings(c *pva.Case, m *rates.Model) []pva.Warning {
 	var out []pva.Warning
 	warn := func(key, format string, a ...any) {
-		out = append(out, pva.Warning{Key: key, Text: fmt.Sprintf(format, a...)})
+		out = append(out, pva.Warning{Key: key, Text: grouped.Sprintf(format, a...)})
 	}
 	if c.Start.Abundance <= c.Question.Threshold {
 		warn("start.abundance", "the population starts at or below the threshold, so that it falls at the first census unless it grows at once")
@@ -23,6 +29,9 @@ func Warnings(c *pva.Case, m *rates.Model) []pva.Warning {
 	}
 	if c.Births.YearSD == 0 && c.Deaths.YearSD == 0 {
 		warn("births.year_sd", "no year-to-year variation is given, which understates the risk of a population of any size (Lande 1993)")
+	}
+	if c.Ceiling.Set && c.Ceiling.Value <= c.Question.Threshold {
+		warn("ceiling.abundance", "the ceiling is at or below the threshold, so that the population has fallen at the first census whatever happens")
 	}
 	if c.UnitSize > 1 {
 		warn("case.unit_size", "a unit stands for %g animals, and chance in births and deaths is drawn for units: demographic noise is overstated", c.UnitSize)
@@ -42,8 +51,8 @@ func Warnings(c *pva.Case, m *rates.Model) []pva.Warning {
 		}
 	}
 	for i, o := range c.Option {
-		if oc, faults := c.With(o.Set); len(faults) == 0 && oc.Question.Horizon != c.Question.Horizon {
-			warn(c.Display(fmt.Sprintf("option.%d.set", i+1)), "the option looks another number of years ahead: its risk is not comparable with the case's")
+		if oc, faults := c.With(o.Set); len(faults) == 0 && (oc.Question.Horizon != c.Question.Horizon || oc.Question.Threshold != c.Question.Threshold || oc.Question.Watch != c.Question.Watch) {
+			warn(c.Display(fmt.Sprintf("option.%d.set", i+1)), "the option puts another question (threshold, horizon or watch): its risk is not comparable with the case's")
 		}
 	}
 	return append(out, m.Warnings()...)
@@ -60,20 +69,20 @@ func wide(warn func(string, string, ...any), key string, mean, sd float64) {
 func runWarnings(a *pva.Assessment) []pva.Warning {
 	var out []pva.Warning
 	warn := func(key, format string, args ...any) {
-		out = append(out, pva.Warning{Key: key, Text: fmt.Sprintf(format, args...)})
+		out = append(out, pva.Warning{Key: key, Text: grouped.Sprintf(format, args...)})
 	}
 	o := a.Outcome
 	if o.Outgrown > 0 {
 		warn("run.stop_above", "%d of %d replicates outgrew %g units and stopped; they count as not fallen and are left out of means", o.Outgrown, o.Replicates, a.Case.Run.StopAbove)
 	}
 	if o.Capped > 0 {
-		warn("births.rate", "births above one per head were capped at one %d times (at-most-one offspring)", o.Capped)
+		warn("births.rate", "births above one per head were capped at one in %d replicate-years (at-most-one offspring)", o.Capped)
 	}
 	if a.Replicates < a.Asked {
 		warn("run.replicates", "interrupted: %d of %d replicates are complete", a.Replicates, a.Asked)
 	}
 	if s := a.Substeps; s != nil && s.Substeps > 0 && s.RiskBound > 0.005 {
-		warn("run.substeps", "sub-steps may shift a probability by up to %.2g; more of them, or events, narrow that", s.RiskBound)
+		warn("run.substeps", "sub-steps may shift a probability by about %.2g; more of them, or events, narrow that", s.RiskBound)
 	}
 	if a.Unreliable {
 		warn("", "simulation and exact answer disagree beyond chance: one of the two is wrong, and this report is not to be relied on")

@@ -29,7 +29,7 @@ func TestPulseWithEverything(t *testing.T) {
 			"births.year_sd": 0.15, "deaths.year_sd": 0.08, "births.trend": -0.05, "deaths.cycle.amplitude": 0.2, "deaths.cycle.period": 3,
 			"deaths.crowding.form": "theta", "deaths.crowding.exponent": 2, "deaths.crowding.scale": 30,
 			"harvest.1.rule": "by_year", "harvest.1.takes": []float64{2.5, 1, 0.7}, "harvest.1.when": "start", "harvest.1.years": "2-", "harvest.1.take_noise": "poisson",
-			"harvest.2.rule": "above", "harvest.2.spare": 7, "harvest.2.fraction": 0.6, "harvest.2.when": "end", "harvest.2.one_year_in": 2,
+			"harvest.2.rule": "above", "harvest.2.spare": 5, "harvest.2.fraction": 0.6, "harvest.2.when": "end", "harvest.2.one_year_in": 2, "harvest.2.stop_below": 9,
 			"catastrophe.1.chance": 0.15, "catastrophe.1.kills": 0.5,
 		}),
 		"a survey and an error of the take": base.with(set{

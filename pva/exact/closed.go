@@ -219,12 +219,20 @@ func blowUp(m *rates.Model) (pva.ClosedForm, bool) {
 	c := m.Case
 	k := m.Birth.Mean / m.Scarcity.A
 	d, n0 := m.Death.Mean(), c.Start.Abundance
-	if c.Births.Breeding != "flow" || m.Scarcity.Form != rates.Proportional || m.BirthCrowding.Form != rates.None || m.DeathCrowding.Form != rates.None || k*n0 <= d || m.BirthCalendar[0] != 1 {
+	if c.Births.Breeding != "flow" || m.Scarcity.Form != rates.Proportional || m.BirthCrowding.Form != rates.None || m.DeathCrowding.Form != rates.None || k*n0 <= d {
 		return pva.ClosedForm{}, false
 	}
 	t := 1 / (k * n0)
 	if d > 0 {
 		t = -math.Log1p(-d/(k*n0)) / d
+	}
+	for y := 0; y < len(m.BirthCalendar); y++ {
+		if float64(y) < t && (m.BirthCalendar[y] != 1 || m.DeathCalendar[y] != 1) {
+			return pva.ClosedForm{}, false
+		}
+	}
+	if t > float64(len(m.BirthCalendar)) {
+		return pva.ClosedForm{}, false
 	}
 	return pva.ClosedForm{Name: "time at which the mean path blows up, without takes", Unit: c.TimeUnit + "s", Value: t,
 		Note:   "births proportional to N have no mean path beyond it; replicates that pass stop_above are counted as outgrown",
@@ -247,7 +255,14 @@ func criticalTake(m *rates.Model) (pva.ClosedForm, bool) {
 	}
 	linear := m.BirthCrowding.Form == rates.Linear && m.DeathCrowding.Form == rates.None ||
 		m.DeathCrowding.Form == rates.Linear && (m.BirthCrowding.Form == rates.None || m.BirthCrowding.Form == rates.Linear)
-	if constant < 0 || c.Births.Breeding != "flow" || m.Scarcity.Form != rates.Plenty || !linear {
+	steady := !c.Ceiling.Set
+	for y := range m.BirthCalendar {
+		steady = steady && m.BirthCalendar[y] == 1 && m.DeathCalendar[y] == 1
+	}
+	for _, s := range c.Stocking {
+		steady = steady && s.Add == 0
+	}
+	if constant < 0 || !steady || m.Takes[constant].Rule.When != "through" || c.Births.Breeding != "flow" || m.Scarcity.Form != rates.Plenty || !linear {
 		return pva.ClosedForm{}, false
 	}
 	// dN/dt = r N - s N^2, so that K = r/s and r K/4 = r^2/(4 s).
@@ -264,7 +279,7 @@ func criticalTake(m *rates.Model) (pva.ClosedForm, bool) {
 	}
 	rule := m.Takes[constant].Rule
 	return pva.ClosedForm{Name: "largest constant take that the mean path bears, r K/4", Unit: c.Counts + " a " + c.TimeUnit, Value: r * r / (4 * s),
-		Beside: rule.Take.Value * rule.Share / float64(rule.OneYearIn), BesideName: "the take of this case",
+		Beside: rule.Take.Value * rule.Share * (1 + rule.ExtraDeaths) / float64(rule.OneYearIn), BesideName: "the take of this case",
 		Note:   "without noise; with it a take well below already carries a risk, and recovery slows as the take nears it (J. R. Beddington & R. M. May 1977, Science 197:463-465)",
 		Source: "M. B. Schaefer 1954, Bull. Inter-Amer. Trop. Tuna Comm. 1:27-56"}, true
 }

@@ -101,7 +101,11 @@ func target(c *pva.Case, h pva.Harvest, y int, seen float64) float64 {
 
 // byYear is the number for year y, counted in years from the first scheduled one.
 func byYear(c *pva.Case, h pva.Harvest, y int) float64 {
-	return h.Takes[min(y-firstScheduled(c, h.Schedule), len(h.Takes)-1)]
+	begins := firstScheduled(c, h.Schedule)
+	if !h.Years.OpenFrom { // the list began with the span, perhaps before year 1
+		begins = h.Years.From - c.Label(1) + 1
+	}
+	return h.Takes[min(y-begins, len(h.Takes)-1)]
 }
 
 // ladder is piecewise linear through the points and flat outside them.

@@ -114,7 +114,7 @@ func (m *Model) balancingDeaths(k, base float64) (float64, bool) {
 	}
 	lo, hi := base, base
 	for gap(hi) > 0 {
-		lo, hi = hi, hi*1.05+1e-3
+		lo, hi = hi, float64(hi*1.05)+1e-3
 		if hi > 700 {
 			return 0, false
 		}
@@ -134,7 +134,7 @@ func (m *Model) balancingDeaths(k, base float64) (float64, bool) {
 // pulse with survivors breeding, the death rate is (d0 + ln(1+b0))/2; pulse
 // with all breeding, births and the death fraction are both (b0+m0)/2.
 func (m *Model) solveBoth(k float64) []pva.Fault {
-	b0 := m.Birth.Mean * m.Scarcity.Factor(k)
+	b0 := float64(m.Birth.Mean * m.Scarcity.Factor(k))
 	d0 := m.Death.Mean()
 	if d0 == 0 {
 		return capacityFault("deaths", k, "the death rate is 0, which crowding only multiplies", "give a death rate above 0, or put the capacity on births alone")

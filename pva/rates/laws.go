@@ -68,7 +68,7 @@ func matchFraction(mean, sd float64) (Fraction, error) {
 	}
 	sdOf := func(v float64) float64 {
 		_, second := logitMoments(centre(v), v)
-		return math.Sqrt(math.Max(0, second-mean*mean))
+		return math.Sqrt(math.Max(0, second-float64(mean*mean)))
 	}
 	lo, hi := 0.0, 1.0
 	for sdOf(hi) < sd {

@@ -33,7 +33,9 @@ func (m *Model) MeanYear(n float64) float64 {
 	c := m.Case
 	n = m.meanActions(n, "start")
 	if c.Births.Breeding == "flow" {
-		n = m.meanFlow(n)
+		if n = m.meanFlow(n); math.IsInf(n, 1) {
+			return n // blown up: nothing brings it back
+		}
 	} else {
 		s := n * portable.Exp(-m.DeathAt(m.Death.Mean(), n))
 		parents := s
@@ -132,7 +134,7 @@ func (m *Model) Equilibria() []Equilibrium {
 	prevN, prev := 1e-3, excess(1e-3)
 	for n := 1e-3 * 1.01; n < top; n *= 1.01 {
 		e := excess(n)
-		if (prev > 0) != (e > 0) && !math.IsInf(e, 1) {
+		if (prev > 0) != (e > 0) && !math.IsInf(e, 0) && !math.IsInf(prev, 0) && !math.IsNaN(e-prev) {
 			lo, hi := prevN, n
 			for i := 0; i < 100; i++ {
 				if mid := (lo + hi) / 2; (excess(mid) > 0) == (prev > 0) {
@@ -169,10 +171,9 @@ func (m *Model) scanTo() float64 {
 }
 
 // Warnings are the doubts about a case that need its formulas: growth that is
-// biologically doubtful, births capped by at-most-one.
+// biologically doubtful.
 func (m *Model) Warnings() []pva.Warning {
 	var out []pva.Warning
-	n := m.Case.Start.Abundance
 	if low := m.GrowthAt(1); m.Scarcity.Form == Plenty {
 		g := low.Pulse
 		if m.Case.Births.Breeding == "flow" {
@@ -181,9 +182,6 @@ func (m *Model) Warnings() []pva.Warning {
 		if g > 2 {
 			out = append(out, pva.Warning{Key: "births.rate", Text: "the population would more than double in a year without crowding, which is doubtful for a vertebrate (common practice, no source)"})
 		}
-	}
-	if c := m.Case; c.Births.Offspring == "at-most-one" && m.BirthAt(m.Birth.Mean, n) > 1 {
-		out = append(out, pva.Warning{Key: "births.rate", Text: "is above one per head with at-most-one offspring: births are capped at one"})
 	}
 	return out
 }

@@ -47,11 +47,11 @@ func PlanSubsteps(m *Model) SubstepPlan {
 
 // eventRate is births, deaths, takes and additions a year at n in a mean year.
 func (m *Model) eventRate(n float64) float64 {
-	r := (m.BirthAt(m.Birth.Mean, n) + m.DeathAt(m.Death.Mean(), n)) * n
+	r := float64((m.BirthAt(m.Birth.Mean, n) + m.DeathAt(m.Death.Mean(), n)) * n)
 	for i := range m.Takes {
 		if t := &m.Takes[i]; t.Rule.When == "through" && t.First > 0 {
 			perYear, perHead := t.Stream(t.First)
-			r += (perYear + perHead*n) * (1 + t.Rule.ExtraDeaths)
+			r += float64((perYear + float64(perHead*n)) * (1 + t.Rule.ExtraDeaths))
 		}
 	}
 	for _, s := range m.Case.Stocking {
@@ -87,7 +87,7 @@ func (m *Model) netGrowth(n float64) float64 {
 	return m.BirthAt(m.Birth.Mean, n) - m.DeathAt(m.Death.Mean(), n)
 }
 
-// BoundSubsteps bounds what sub-steps do to a flow case's answer; nil for a
+// BoundSubsteps estimates the most that sub-steps do to a flow case's answer; nil for a
 // pulse case. Freezing the rates within a sub-step shifts the mean log growth of
 // a year (LogGrowth: the largest difference between a year of sub-steps and a
 // fine integration, over the populations where sub-steps are used) and lengthens
@@ -96,7 +96,8 @@ func (m *Model) netGrowth(n float64) float64 {
 // variance s^2 a year, the total variation between two such walks over T years
 // is at most sqrt(T) LogGrowth/(2 s) + sqrt(T/8) Variance (Pinsker's inequality
 // and the Kullback-Leibler divergence of normal laws): no probability, the risk
-// included, can be off by more. It is a bound, and usually a generous one.
+// included, is then off by more. It rests on mean rates and on steps near to
+// normal, so it is an estimate of a bound, and usually a generous one.
 func BoundSubsteps(m *Model) *pva.SubstepBound {
 	if m.Case.Births.Breeding != "flow" {
 		return nil
@@ -107,7 +108,7 @@ func BoundSubsteps(m *Model) *pva.SubstepBound {
 	}
 	b := &pva.SubstepBound{Substeps: plan.Substeps, EventsBelow: math.Max(0, plan.EventsBelow)}
 	from := math.Max(math.Max(plan.EventsBelow, m.Case.Question.Threshold), 1)
-	weather := m.Birth.Sigma*m.Birth.Sigma*m.Birth.Mean*m.Birth.Mean + m.deathVariance()
+	weather := m.weatherVariance()
 	worst := 0.0
 	for n := from; n < m.substepsTo(from); n *= 1.1 {
 		shift := math.Abs(math.Log(m.substepYear(n, plan.Substeps) / m.meanFlow(n)))
@@ -127,6 +128,15 @@ func BoundSubsteps(m *Model) *pva.SubstepBound {
 	}
 	b.RiskBound = math.Min(1, worst)
 	return b
+}
+
+// weatherVariance is the variance of a year's b - d that the last year's weather
+// does not foretell: correlation of births and deaths taken off, memory left out.
+func (m *Model) weatherVariance() float64 {
+	b := m.Birth.Sigma * m.Birth.Mean
+	d := math.Sqrt(m.deathVariance())
+	memory := m.Case.Weather.Memory
+	return math.Max(0, b*b+d*d-2*m.Case.Weather.Correlation*b*d) * (1 - memory*memory)
 }
 
 // deathVariance is the variance of the death rate between years.

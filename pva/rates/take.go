@@ -14,8 +14,11 @@ type Take struct {
 	Scheduled []bool
 	// Surveyed says in which model years a survey is made; index y-1.
 	Surveyed []bool
-	// First is the first scheduled model year, from which takes by year count.
-	First  int
+	// First is the first scheduled model year, 0 if there is none: surveys begin then.
+	First int
+	// Begins is the model year in which the rule's span begins, from which takes
+	// by year count; it lies before year 1 where the span began earlier.
+	Begins int
 	Survey LogNormal // factor of the survey's estimate, mean 1
 	Error  LogNormal // factor of the take's error, mean 1
 	// Rate is the removal rate per head of a fraction taken through the year.
@@ -27,6 +30,10 @@ func newTake(c *pva.Case, h pva.Harvest) Take {
 	t.Scheduled = make([]bool, c.Question.Horizon)
 	t.Surveyed = make([]bool, c.Question.Horizon)
 	t.First, _ = h.FirstScheduled(c)
+	t.Begins = t.First
+	if !h.Years.OpenFrom {
+		t.Begins = h.Years.From - c.Label(1) + 1
+	}
 	for i := range t.Scheduled {
 		y := i + 1
 		t.Scheduled[i] = h.Scheduled(c, y)
@@ -77,7 +84,7 @@ func (t *Take) byYear(y int) float64 {
 	if n == 0 || t.First == 0 {
 		return 0
 	}
-	return t.Rule.Takes[max(0, min(y-t.First, n-1))]
+	return t.Rule.Takes[max(0, min(y-t.Begins, n-1))]
 }
 
 // ladder is linear between points, flat outside them.

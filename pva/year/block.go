@@ -117,11 +117,10 @@ func ceiling(b *block, _ int) {
 // watch marks the lanes at or below the threshold now.
 func watch(b *block, _ int) {
 	for i := 0; i < b.lanes; i++ {
-		if b.n[i] <= b.program.threshold {
+		if b.n[i] <= b.program.threshold && !b.isOutgrown(i) {
 			b.watched |= 1 << uint(i)
 		}
 	}
-	b.watched &^= b.outgrown
 }
 
 // census records the year and marks who has fallen: model section 2, step 6.

@@ -12,7 +12,17 @@ import (
 // explode is found at once and not by patience.
 const maxEvents = 10_000_000
 
-const tooManyEvents = "more than 10,000,000 births and deaths in one year: set run.substeps = \"auto\" to take such years in sub-steps;"
+// tooManyEvents is the fault of such a case, with its way out.
+func (f *flow) tooManyEvents(always bool) string {
+	const what = "more than 10,000,000 births, deaths, removals and additions in one year: "
+	switch {
+	case always:
+		return what + "watch = \"always\" looks at every one of them; use watch = \"census\", or count in larger units;"
+	case f.adaptive:
+		return what + "rates so high next to a population so small cannot be followed; check the take and the additions through the year;"
+	}
+	return what + "set run.substeps = \"auto\" to take such years in sub-steps;"
+}
 
 // table holds what births and deaths of the whole population are at n for
 // rates of 1, so that an event costs a look-up and not a formula.
@@ -69,13 +79,17 @@ func (f *flow) total(b *block, i int, n int64) (birth, death float64) {
 }
 
 // events runs the exact continuous-time chain of lane i from time t (Gillespie
-// 1977) until the year ends or N passes eventsBelow or outgrows. It returns the
+// 1977) until a time at most 1, or until N passes eventsBelow or outgrows; a lane
+// that begins above eventsBelow runs to that time. It returns the
 // time reached, and false if there were too many events. Each event draws an
 // exponential and a uniform from the demography stream.
-func (f *flow) events(b *block, i int, t float64, streams []rate, always bool, count *int) (float64, bool) {
+func (f *flow) events(b *block, i int, t, until float64, streams []rate, always bool, count *int) (float64, bool) {
 	s := &b.demography[i]
 	n := b.n[i]
 	top := min(f.eventsBelow, b.program.stopAbove)
+	if n > top {
+		top = b.program.stopAbove
+	}
 	for {
 		birth, death := f.total(b, i, n)
 		sum := birth + death
@@ -85,13 +99,13 @@ func (f *flow) events(b *block, i int, t float64, streams []rate, always bool, c
 		}
 		before := t
 		t += rng.Exponential(s) / (sum + other)
-		if !(t < 1) { // also where nothing can happen any more: a rate of 0
-			t = 1
+		if !(t < until) { // also where nothing can happen any more: a rate of 0
+			t = until
 		}
 		for k := range streams {
 			streams[k].wait(n, t-before)
 		}
-		if t == 1 {
+		if t == until {
 			break
 		}
 		if *count++; *count > maxEvents {
@@ -167,7 +181,7 @@ func (f *flow) together(b *block, y int) {
 	births, deaths, fixed := f.table.birth, f.table.death, f.odds
 	for round := 0; len(active) > 0; round++ {
 		if round > maxEvents {
-			b.fail(int(active[0]), y, tooManyEvents)
+			b.fail(int(active[0]), y, f.tooManyEvents(false))
 			return
 		}
 		for k := 0; k < len(active); {

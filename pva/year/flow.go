@@ -147,11 +147,18 @@ func (f *flow) lane(b *block, i, y int, t float64, events int, streams []rate, a
 	for k := 0; t < 1; {
 		n := b.n[i]
 		b.most = max(b.most, n)
-		if n <= f.eventsBelow {
+		until := 1.0
+		single := n <= f.eventsBelow
+		if !single && f.adaptive && len(streams) > 0 && f.nearGuard(b, i, streams, step) {
+			// A take or an addition opens or closes near here: a sub-step's worth
+			// of events, one by one, finds the very event at which it does.
+			single, until = true, math.Min(1, t+step)
+		}
+		if single {
 			var ok bool
-			t, ok = f.events(b, i, t, streams, always, &events)
+			t, ok = f.events(b, i, t, until, streams, always, &events)
 			if !ok {
-				b.fail(i, y, tooManyEvents)
+				b.fail(i, y, f.tooManyEvents(always))
 				return
 			}
 			if b.isOutgrown(i) {
@@ -170,6 +177,10 @@ func (f *flow) lane(b *block, i, y int, t float64, events int, streams []rate, a
 			if r := f.m.BirthAt(b.birth[i], float64(n)) + f.m.DeathAt(b.death[i], float64(n)); r*dt > 0.1 {
 				dt = math.Max(0.1/r, 1e-7)
 			}
+			// Streams move N by at most a hundredth of it in a sub-step.
+			if moved := streamed(streams, n); moved*dt > 0.01*float64(n)+1 {
+				dt = math.Max((0.01*float64(n)+1)/moved, 1e-7)
+			}
 		}
 		if len(streams) == 0 {
 			f.jump(b, i, s, dt)
@@ -187,6 +198,44 @@ func (f *flow) lane(b *block, i, y int, t float64, events int, streams []rate, a
 			return
 		}
 	}
+}
+
+// streamed is how many animals the streams that run at n move a year.
+func streamed(streams []rate, n int64) float64 {
+	sum := 0.0
+	for k := range streams {
+		sum += streams[k].at(n)
+	}
+	return sum
+}
+
+// nearMost is the number of events a year up to which a lane near a guard is
+// taken event by event; beyond it a guard is kept to a hundredth of N.
+const nearMost = 50000
+
+// nearGuard says whether N may pass a level at which a stream opens or closes
+// within a sub-step: if the level is nearer than the sub-step's drift and six
+// standard deviations of its events.
+func (f *flow) nearGuard(b *block, i int, streams []rate, step float64) bool {
+	n := b.n[i]
+	birth, death := f.total(b, i, n)
+	events := birth + death
+	for k := range streams {
+		events += streams[k].perYear + float64(streams[k].perHead*float64(n))
+	}
+	if events > nearMost {
+		return false
+	}
+	reach := math.Abs(birth-death)*step + streamed(streams, n)*step + 6*math.Sqrt(events*step) + 1
+	for k := range streams {
+		st := &streams[k]
+		for _, guard := range [...]float64{float64(st.stopBelow), float64(st.leave), st.onlyBelow} {
+			if guard > 0 && math.Abs(float64(n)-guard) <= reach {
+				return true
+			}
+		}
+	}
+	return false
 }
 
 // jump draws the exact linear birth-death transition over tau with rates per
@@ -233,6 +282,9 @@ func (f *flow) flowStreams(b *block, i int, streams []rate, tau float64) {
 		}
 		if st.add {
 			added := rng.Poisson(&b.stocking[i], st.perYear*tau)
+			if float64(n+added) > st.onlyBelow { // it stops with the addition that reaches only_below
+				added = int64(math.Ceil(st.onlyBelow)) - n
+			}
 			b.n[i] += added
 			b.row.Stocked[i] += added
 			continue
@@ -249,6 +301,11 @@ func (f *flow) flowStreams(b *block, i int, streams []rate, tau float64) {
 			b.n[i] -= removed
 			b.row.Extra[i] += removed
 			continue
+		}
+		if st.stopBelow > st.leave {
+			// It stops with the removal that goes below stop_below: what would
+			// have followed is closed and no shortfall.
+			intended = min(intended, n-st.stopBelow+1)
 		}
 		made := min(intended, max(0, n-st.leave))
 		b.n[i] -= made

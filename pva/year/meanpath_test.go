@@ -167,3 +167,47 @@ func TestWeatherMoments(t *testing.T) {
 		t.Error(fmt.Sprintf("variance of births between years %.5f, want 0.04", got))
 	}
 }
+
+// Auto and events give one answer where a take closes or an addition stops near
+// where the population stands (two counts or means may differ by 5.73 standard
+// errors). The first case hovers at stop_below, a few animals above the
+// threshold; without care in sub-steps its risk came out as 1 instead of 0.
+func TestAutoKeepsGuards(t *testing.T) {
+	flow := []any{"births.breeding", "flow", "deaths.rate", .05, "births.rate", .2, "births.year_sd", .05, "births.crowding.form", "linear", "births.crowding.capacity", 9000, "run.seed", 6,
+		"harvest.1.rule", "constant", "harvest.1.when", "through"}
+	for name, pairs := range map[string][]any{
+		"closes below": append([]any{"question.threshold", 4980, "question.horizon", 6, "start.abundance", 5000, "harvest.1.take", 600, "harvest.1.stop_below", 5000}, flow...),
+		"leaves":       append([]any{"question.threshold", 4940, "question.horizon", 6, "start.abundance", 5600, "harvest.1.take", 3000, "harvest.1.leave", 4950}, flow...),
+		"adds below": {"question.threshold", 96, "question.horizon", 4, "start.abundance", 100, "births.breeding", "flow", "births.rate", .1, "deaths.rate", .4, "run.seed", 6,
+			"stocking.1.add", 1000, "stocking.1.only_below", 100, "stocking.1.when", "through"},
+	} {
+		const n = 1500
+		auto := run(t, caseOf(t, append(pairs, "run.substeps", "auto")...), n, 2)
+		events := run(t, caseOf(t, append(pairs, "run.substeps", "events")...), n, 2)
+		last := len(auto.Years) - 1
+		for _, at := range []int{0, last} {
+			a, e := &auto.Years[at], &events.Years[at]
+			pa, pe := float64(a.Fallen)/n, float64(e.Fallen)/n
+			p := (pa + pe) / 2
+			if z := math.Abs(pa-pe) / math.Sqrt(math.Max(p*(1-p), 1e-9)*2/n); z > 5.73 {
+				t.Errorf("%s, year %d: %d fallen in sub-steps, %d by events (z = %.1f)", name, at+1, a.Fallen, e.Fallen, z)
+			}
+			va := spread(a)
+			if z := math.Abs(a.Sum.Float()-e.Sum.Float()) / n / math.Sqrt(2*va/n); z > 5.73 {
+				t.Errorf("%s, year %d: mean N %.3f in sub-steps, %.3f by events (z = %.1f)", name, at+1, a.Sum.Float()/n, e.Sum.Float()/n, z)
+			}
+		}
+	}
+}
+
+// spread is the variance of a year's abundance.
+func spread(y *pva.YearTally) float64 {
+	var n, sum, square float64
+	y.Abundance.Each(func(bin int, count int64) {
+		v := float64(pva.BinLow(bin)+pva.BinLow(bin+1)-1) / 2
+		n += float64(count)
+		sum += float64(count) * v
+		square += float64(count) * v * v
+	})
+	return math.Max(square/n-sum*sum/n/n, 1e-6)
+}

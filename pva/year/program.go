@@ -60,7 +60,7 @@ func compile(m *rates.Model) *program {
 	// 3: births and deaths.
 	if c.Births.Breeding == "flow" {
 		p.flow = newFlow(m)
-		p.passes = append(p.passes, p.flow.pass(p.always)) // watches within
+		p.passes = append(p.passes, p.flow.pass(p.always), checkOutgrown) // watches within
 	} else {
 		add(pulsePasses(m)...)
 		p.passes = append(p.passes, checkOutgrown)

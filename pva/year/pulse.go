@@ -77,8 +77,13 @@ func breed(m *rates.Model) pass {
 				}
 				b.n[i] += rng.Binomial(&b.demography[i], parents, f)
 			case "clumped":
-				// A sum of S laws of size k each is one of size k S.
-				b.n[i] += rng.NegativeBinomial(&b.demography[i], mean, clumping*float64(parents))
+				// A sum of S laws of size k each is one of size k S; of a size so
+				// large that its variance is its mean, it is Poisson.
+				if size := clumping * float64(parents); size <= 1e12 && mean <= 1e12 {
+					b.n[i] += rng.NegativeBinomial(&b.demography[i], mean, size)
+				} else {
+					b.n[i] += rng.Poisson(&b.demography[i], mean)
+				}
 			default:
 				b.n[i] += rng.Poisson(&b.demography[i], mean)
 			}

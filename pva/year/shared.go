@@ -31,8 +31,9 @@ func (s *shared) begin(seed uint64, first, step int64, lanes int) {
 }
 
 // draw draws one year: two normals of weather, then for each catastrophe a
-// uniform (and a normal, if any variant's killing varies), then a normal for
-// each harvest rule (if any variant surveys with error).
+// uniform and a normal, then a normal for each harvest rule. Weather and surveys
+// have streams of their own, so that not drawing what no variant uses changes
+// nothing for any.
 func (s *shared) draw() {
 	if s.needs.weather {
 		for i := 0; i < s.lanes; i++ {
@@ -44,10 +45,8 @@ func (s *shared) draw() {
 		for i := 0; i < s.lanes; i++ {
 			s.strikes[c][i] = s.catastrophe[i].Float64()
 		}
-		if s.needs.killNormals {
-			for i := 0; i < s.lanes; i++ {
-				s.kills[c][i] = rng.Normal(&s.catastrophe[i])
-			}
+		for i := 0; i < s.lanes; i++ {
+			s.kills[c][i] = rng.Normal(&s.catastrophe[i])
 		}
 	}
 	for r := range s.surveys {

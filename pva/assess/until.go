@@ -1,0 +1,186 @@
+package assess
+
+import (
+	"context"
+	"errors"
+	"runtime"
+
+	"ebbline/pva"
+	"ebbline/pva/ensemble"
+	"ebbline/pva/estimate"
+	"ebbline/pva/rates"
+	"ebbline/pva/year"
+)
+
+// Settled is an assessment whose replicates were added until its verdict was
+// settled. The intervals of its risks, and of those of its baseline and options,
+// are of a confidence sequence (estimate.Sequence): they hold however often one
+// looks and whenever one stops. Intervals by year stay those of a single look.
+type Settled struct {
+	*pva.Assessment
+	Looks []Look
+	// Decided is false if the most replicates allowed did not settle it.
+	Decided bool
+}
+
+// Look is what was seen after so many replicates.
+type Look struct {
+	Risk    pva.Proportion
+	Verdict pva.Verdict
+}
+
+// MostUntil is the number of replicates at which UntilDecided stops where none
+// is given, in times those of the case.
+const MostUntil = 256
+
+// ErrNoLimit is returned for a case without a limit, which has no verdict.
+var ErrNoLimit = errors.New("the case states no limit (question.limit), so that there is no verdict to wait for")
+
+// UntilDecided assesses a case, doubling its replicates until the verdict is
+// settled or there are most of them (0: MostUntil times those of the case). An
+// exact answer that is added anyhow settles it at the first look. Batches are
+// whole blocks, so that the first has up to 63 replicates more than the case
+// asks for. If the context ends the assessment is of what is complete, with the
+// context's error; nil if that is nothing.
+func UntilDecided(ctx context.Context, c *pva.Case, opt Options, most int64) (*Settled, error) {
+	if len(c.Uncertain) > 0 {
+		return nil, ErrUncertain
+	}
+	if !c.Question.Limit.Set {
+		return nil, ErrNoLimit
+	}
+	if most <= 0 {
+		most = MostUntil * c.Run.Replicates
+	}
+	set, err := variants(c)
+	if err != nil {
+		return nil, err
+	}
+	models := make([]*rates.Model, len(set))
+	for i, v := range set {
+		models[i] = v.model
+	}
+	engine, err := year.New(c.Run.Seed, models...)
+	if err != nil {
+		return nil, err
+	}
+	workers := opt.Workers
+	if workers <= 0 {
+		workers = runtime.NumCPU()
+	}
+	s := &Settled{}
+	var tallies []*pva.Tally
+	var exactly *pva.Assessment // the first look, with the exact answers
+	n, asked := int64(0), int64(0)
+	batch := blocks(c.Run.Replicates)
+	for {
+		asked = n + batch
+		plan := ensemble.Plan{First: n, Replicates: batch, Workers: workers}
+		if opt.Progress != nil {
+			before := n
+			plan.Progress = func(done int64) { opt.Progress(before + done) }
+		}
+		more, runErr := ensemble.Run(ctx, engine, plan)
+		if more == nil || len(more) > 0 && more[0].Replicates == 0 {
+			if tallies == nil || ctx.Err() == nil {
+				return nil, runErr
+			}
+			err = runErr
+			break
+		}
+		if tallies == nil {
+			tallies = more
+		} else {
+			for i := range tallies {
+				tallies[i].Merge(more[i])
+			}
+		}
+		n += more[0].Replicates
+		last := tallies[0].Years[c.Question.Horizon-1]
+		risk := sequence(pva.Proportion{Count: last.Fallen, Of: n}, c.Question.Confidence)
+		s.Looks = append(s.Looks, Look{risk, estimate.Verdict(c.Question.Limit, risk)})
+		if err = runErr; err != nil {
+			break
+		}
+		if exactly == nil {
+			exactly = gather(c, set, tallies)
+			if err = addExact(ctx, exactly, set, opt.Exact); err != nil {
+				break
+			}
+		}
+		if s.Looks[len(s.Looks)-1].Verdict != pva.Undecided || known(exactly.Exact) || n >= most {
+			break
+		}
+		batch = max(ensemble.Lanes, blocks(min(n, most-n)))
+	}
+	s.Assessment = s.state(c, set, tallies, exactly)
+	s.Asked = asked
+	if err == nil {
+		s.Asked = s.Replicates
+	}
+	s.Warnings = append(Warnings(c, set[0].model), runWarnings(s.Assessment)...)
+	return s, err
+}
+
+// blocks is a number of replicates rounded up to whole blocks.
+func blocks(n int64) int64 { return (n + ensemble.Lanes - 1) / ensemble.Lanes * ensemble.Lanes }
+
+func known(e *pva.ExactAnswer) bool { return e != nil && e.Reason == "" }
+
+// state makes the assessment of all replicates, with the intervals of the
+// sequence, and with the exact answers of the first look.
+func (s *Settled) state(c *pva.Case, set []variant, tallies []*pva.Tally, first *pva.Assessment) *pva.Assessment {
+	a := gather(c, set, tallies)
+	a.Substeps = rates.BoundSubsteps(set[0].model)
+	for _, o := range outcomes(a) {
+		o.Risk = sequence(o.Risk, c.Question.Confidence)
+	}
+	if first != nil {
+		a.Exact, a.BaselineExact = first.Exact, first.BaselineExact
+		held := func(p pva.Proportion, e *pva.ExactAnswer, m *rates.Model) float64 {
+			if !known(e) {
+				return 1
+			}
+			return exactTail(p, e, rates.BoundSubsteps(m))
+		}
+		option := 0
+		for _, v := range set {
+			tail := 1.0
+			switch v.role {
+			case theCase:
+				tail = held(a.Outcome.Risk, a.Exact, v.model)
+				if known(a.Exact) {
+					a.ExactTail = tail
+				}
+			case theBaseline:
+				tail = held(a.Baseline.Risk, a.BaselineExact, v.model)
+			case anOption:
+				a.Options[option].Exact = first.Options[option].Exact
+				tail = held(a.Options[option].Outcome.Risk, a.Options[option].Exact, v.model)
+				option++
+			}
+			a.Unreliable = a.Unreliable || tail < disagree
+		}
+	}
+	decide(a)
+	s.Decided = a.Verdict != pva.Undecided
+	return a
+}
+
+func outcomes(a *pva.Assessment) []*pva.Outcome {
+	out := []*pva.Outcome{a.Outcome}
+	if a.Baseline != nil {
+		out = append(out, a.Baseline)
+	}
+	for i := range a.Options {
+		out = append(out, a.Options[i].Outcome)
+	}
+	return out
+}
+
+// sequence is a proportion with the interval of a confidence sequence.
+func sequence(p pva.Proportion, confidence float64) pva.Proportion {
+	s := estimate.NewSequence(confidence)
+	s.Update(p.Count, p.Of)
+	return s.Proportion()
+}
