@@ -288,6 +288,10 @@ func (c *Case) CheckOptions() Faults {
 	return b.faults
 }
 
+// ofTheRun are keys that say how the case and all its options are run and judged
+// together.
+var ofTheRun = map[string]bool{"run.seed": true, "run.replicates": true, "run.draws": true, "run.baseline": true, "question.limit": true, "question.confidence": true}
+
 func (b *builder) tryOption(i int, bare *Case) {
 	o := b.c.Option[i]
 	set := "option." + strconv.Itoa(i+1) + ".set"
@@ -306,6 +310,9 @@ func (b *builder) tryOption(i int, bare *Case) {
 			b.ofKey(set+"."+s.Path, s.Value.String(), "is set twice (also as "+other+")", "keep one of them")
 		}
 		written[at] = s.Path
+		if ofTheRun[at] || strings.HasPrefix(at, "case.") {
+			b.ofKey(set+"."+s.Path, s.Value.String(), "cannot be set by an option: every option is run and judged as the case is", "set it in the case")
+		}
 	}
 	_, faults := bare.With(o.Set)
 	for _, f := range faults {

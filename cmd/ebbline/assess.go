@@ -6,6 +6,7 @@ import (
 	"io"
 	"path/filepath"
 	"strings"
+	"syscall"
 
 	"ebbline/pva"
 	"ebbline/pva/assess"
@@ -69,7 +70,7 @@ func (a *app) assess(o *assessOptions, args []string) error {
 	if err := o.outputs.check(book, c, name); err != nil {
 		return err
 	}
-	ctx, stop := interruptible()
+	ctx, stop := a.interruptible()
 	defer stop()
 	progress, finish := progressBar(a.errs, c.Run.Replicates, o.quiet)
 	result, runErr := assess.Run(ctx, c, assess.Options{Workers: o.workers, Progress: progress, Exact: wish})
@@ -94,6 +95,9 @@ func (a *app) assess(o *assessOptions, args []string) error {
 	}
 	switch {
 	case runErr != nil && ctx.Err() != nil:
+		if result.Replicates == result.Asked {
+			return errors.New("interrupted while the exact answer was computed: the report holds all replicates; --no-exact leaves the exact answer out")
+		}
 		return fmt.Errorf("interrupted: the report holds the %d replicates that were complete; run again for all of them", result.Replicates)
 	case runErr != nil:
 		return runErr
@@ -112,7 +116,9 @@ func (a *app) say(jsonOut bool, s string) {
 	if jsonOut {
 		w = a.errs
 	}
-	io.WriteString(w, s)
+	if _, err := io.WriteString(w, s); err != nil && !errors.Is(err, syscall.EPIPE) {
+		a.unsaid = err // a reader that went away (head) is no failure
+	}
 }
 
 // meta is what the report says about this run: a command line that repeats it

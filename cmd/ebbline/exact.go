@@ -37,7 +37,7 @@ has no such answer it says why (exit status 2).`,
 			if _, ok, reason := exact.Cost(m); !ok {
 				return badInputf("%s: there is no exact answer: %s", name, reason)
 			}
-			ctx, stop := interruptible()
+			ctx, stop := a.interruptible()
 			defer stop()
 			e, err := exact.Solve(ctx, m, exact.Options{})
 			if err != nil {
@@ -59,7 +59,7 @@ has no such answer it says why (exit status 2).`,
 					}
 				} else {
 					o := outputs{force: force}
-					if err := o.fresh(json); err != nil {
+					if err := o.fresh(json, name); err != nil {
 						return err
 					}
 					if err := reports.Save(json, doc); err != nil {

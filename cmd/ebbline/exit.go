@@ -36,6 +36,9 @@ var errAboveLimit = errors.New("above the limit")
 
 // status prints an error once and turns it into an exit status.
 func (a *app) status(err error) int {
+	if err == nil && a.unsaid != nil {
+		err = fmt.Errorf("the answer could not be printed: %w", a.unsaid)
+	}
 	if err == nil {
 		return statusDone
 	}

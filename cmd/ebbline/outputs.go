@@ -31,43 +31,34 @@ type flagSet interface {
 	BoolVar(p *bool, name string, value bool, usage string)
 }
 
-// check makes sure, before anything runs, that every file can be written and
-// that none is lost.
+// check makes sure, before anything runs, that every file of an assessment can
+// be written and that none is lost.
 func (o *outputs) check(book string, c *pva.Case, name string) error {
-	if !strings.EqualFold(filepath.Ext(book), ".xlsx") {
-		return badInputf("%s: the report is a workbook; name it with .xlsx", book)
-	}
-	if sameFile(book, name) {
-		return badInputf("%s is the case itself; name the report with --out FILE.xlsx", book)
-	}
-	if err := reports.CheckTarget(book, reports.TitleOf(c, name), o.force); err != nil {
-		return badInput{err}
-	}
-	if err := o.checkFigures(); err != nil {
-		return err
-	}
-	if o.json != "" && o.json != "-" {
-		if err := o.fresh(o.json); err != nil {
-			return err
-		}
-	}
-	if o.csv != "" {
-		for _, f := range csvFiles {
-			if err := o.fresh(filepath.Join(o.csv, f)); err != nil {
-				return err
-			}
-		}
-	}
-	return nil
+	return o.checkFiles(book, c, name, csvFiles...)
 }
 
-// fresh refuses to overwrite a file without --force.
-func (o *outputs) fresh(path string) error {
-	if o.force {
-		return nil
+// fresh refuses to overwrite a file without --force, and the case itself with it,
+// and a file in a folder that takes none.
+func (o *outputs) fresh(path, caseName string) error {
+	if sameFile(path, caseName) {
+		return badInputf("%s is the case itself; give another name", path)
 	}
-	if _, err := os.Stat(path); err == nil {
+	info, err := os.Stat(path)
+	switch {
+	case err == nil && info.IsDir():
+		return badInputf("%s is a folder; give the name of a file", path)
+	case err == nil && !o.force:
 		return badInputf("%s exists; use --force to replace it", path)
+	}
+	dir := filepath.Dir(path)
+	if _, err := os.Stat(dir); err != nil {
+		if dir == filepath.Clean(o.csv) || dir == filepath.Clean(o.figures) {
+			return nil // made when it is written
+		}
+		return badInputf("%s: the folder %s does not exist", path, dir)
+	}
+	if err := reports.CheckFolder(dir); err != nil {
+		return badInput{err}
 	}
 	return nil
 }

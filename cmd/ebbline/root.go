@@ -10,6 +10,7 @@ import (
 type app struct {
 	in        io.Reader
 	out, errs io.Writer
+	unsaid    error // why text for people could not be written
 }
 
 func newRoot(a *app) *cobra.Command {

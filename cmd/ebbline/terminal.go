@@ -2,9 +2,11 @@ package main
 
 import (
 	"context"
+	"fmt"
 	"io"
 	"os"
 	"os/signal"
+	"sync"
 	"syscall"
 
 	"github.com/vbauerster/mpb/v8"
@@ -20,13 +22,23 @@ func isTerminal(w io.Writer) bool {
 
 // interruptible is a context that ends at the first Ctrl-C or TERM, so that
 // what is complete is kept; the second one ends the program at once.
-func interruptible() (context.Context, func()) {
+func (a *app) interruptible() (context.Context, func()) {
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
+	ended := make(chan struct{})
 	go func() {
-		<-ctx.Done()
-		stop()
+		select {
+		case <-ctx.Done():
+			stop()
+			select {
+			case <-ended:
+			default:
+				fmt.Fprintln(a.errs, "ebbline: finishing what is in work; again to end at once")
+			}
+		case <-ended:
+		}
 	}()
-	return ctx, stop
+	var once sync.Once
+	return ctx, func() { once.Do(func() { close(ended) }); stop() }
 }
 
 // progressBar shows how many of total replicates are done, on a terminal only.

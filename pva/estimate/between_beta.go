@@ -31,8 +31,12 @@ type group struct {
 }
 
 // least is the smallest spread told apart from none: the risk then has a
-// standard deviation of a thousandth of the largest possible.
-const least = 1e-6
+// standard deviation of a thousandth of the largest possible. At the largest that
+// is looked at nearly all risks are next to 0 or 1.
+const (
+	least   = 1e-6
+	largest = 1e4
+)
 
 // FitBeta fits the law to one count a draw, of each replicates (2 or more; with
 // one, a law and its mean cannot be told apart, which is a bug of the caller).
@@ -62,16 +66,18 @@ func FitBeta(fallen []int64, each int64) BetaFit {
 // climb looks for the largest likelihood on the scales of the logit of the mean
 // and the logarithm of the spread by the simplex method (Nelder & Mead 1965).
 func (f *BetaFit) climb(mean, spread float64) {
-	problem := optimize.Problem{Func: func(x []float64) float64 {
-		return -f.logLik(1/(1+math.Exp(-x[0])), math.Exp(x[1]))
-	}}
+	// Kept where the likelihood is a finite number, however far the simplex goes.
+	at := func(x []float64) (mean, spread float64) {
+		return 1 / (1 + math.Exp(-math.Max(-30, math.Min(30, x[0])))), math.Exp(math.Max(math.Log(least)-1, math.Min(math.Log(largest), x[1])))
+	}
+	problem := optimize.Problem{Func: func(x []float64) float64 { return -f.logLik(at(x)) }}
 	settings := &optimize.Settings{Converger: &optimize.FunctionConverge{Absolute: 1e-11, Iterations: 60}, FuncEvaluations: 4000}
 	r, err := optimize.Minimize(problem, []float64{math.Log(mean / (1 - mean)), math.Log(spread)}, settings, &optimize.NelderMead{})
 	if r == nil || err != nil && math.IsNaN(r.F) {
 		return
 	}
-	if s := math.Exp(r.X[1]); s >= least && -r.F > f.LogLik {
-		f.Mean, f.Spread, f.LogLik = 1/(1+math.Exp(-r.X[0])), s, -r.F
+	if m, s := at(r.X); s >= least && -r.F > f.LogLik {
+		f.Mean, f.Spread, f.LogLik = m, s, -r.F
 	}
 }
 
@@ -227,7 +233,6 @@ const steps = 40
 // logarithm over those whose likelihood reaches the bound at some mean.
 func (f *BetaFit) spreads(bound float64) []float64 {
 	reaches := func(s float64) bool { return f.logLik(f.bestMean(s), s) >= bound }
-	const largest = 1e4
 	from, to := math.Log(least), math.Log(largest)
 	peak := math.Log(math.Max(least, f.Spread))
 	halve := func(in, out float64) float64 { // from a spread that reaches to one that does not
