@@ -9,7 +9,7 @@ func rateKeys() []*Key {
 		number("births.year_sd", perYear, 0, 1e6, 0.0, "standard deviation of the birth rate between years", func(c *Case, _ []int) any { return &c.Births.YearSD }),
 		word("births.parents", []string{"survivors", "all"}, "survivors", "who breeds in a pulse year", func(c *Case, _ []int) any { return &c.Births.Parents }),
 		word("births.offspring", []string{"poisson", "at-most-one", "clumped"}, "poisson", "law of the young in a pulse year", func(c *Case, _ []int) any { return &c.Births.Offspring }),
-		number("births.clumping", "size parameter", 1e-6, 1e6, nil, "size parameter of clumped young (negative binomial)", func(c *Case, _ []int) any { return &c.Births.Clumping }).when("births.offspring", "clumped"),
+		number("births.clumping", "size parameter", 0.001, 1e6, nil, "size parameter of clumped young (negative binomial)", func(c *Case, _ []int) any { return &c.Births.Clumping }).when("births.offspring", "clumped"),
 		word("births.scarcity.form", []string{"none", "proportional", "saturating"}, "none", "Allee effect in births", func(c *Case, _ []int) any { return &c.Births.Scarcity.Form }),
 		number("births.scarcity.at", units, 0, largest, nil, "births per head reach the stated rate at this N", func(c *Case, _ []int) any { return &c.Births.Scarcity.At }).above().when("births.scarcity.form", "proportional"),
 		number("births.scarcity.half_at", units, 0, largest, nil, "births per head are half the stated rate at this N", func(c *Case, _ []int) any { return &c.Births.Scarcity.HalfAt }).above().when("births.scarcity.form", "saturating"),

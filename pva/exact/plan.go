@@ -15,6 +15,7 @@ type plan struct {
 	first   setting
 	goal    float64
 	most    float64
+	further float64 // operations up to which more runs may be made to lower the error
 	// inexact says that something is integrated by quadrature or approximated,
 	// so that two runs are compared.
 	inexact bool
@@ -56,6 +57,7 @@ func newPlan(m *rates.Model, opt Options) *plan {
 	if p.most == 0 {
 		p.most = Most
 	}
+	p.further = opt.Most
 	if p.climate.memory != 0 {
 		p.goal = GoalWithMemory
 	}
@@ -73,7 +75,13 @@ func newPlan(m *rates.Model, opt Options) *plan {
 	}
 	if need := p.memory(p.first); need > mostBytes {
 		p.reason = fmt.Sprintf("the law of N needs %d states%s, about %.1f GB of memory", p.first.top+1, p.perWeather(), need/1e9)
-	} else if ops := p.total(); ops > p.most {
+		return p
+	}
+	ops := p.total()
+	if p.further == 0 {
+		p.further = math.Min(p.most, math.Max(Cheap, 4*ops))
+	}
+	if ops > p.most {
 		p.reason = fmt.Sprintf("the law of N needs %d states%s and about %.0e operations, more than the %.0e allowed", p.first.top+1, p.perWeather(), ops, p.most)
 	}
 	return p

@@ -5,6 +5,8 @@ import (
 	"math"
 	"strings"
 	"testing"
+
+	"gonum.org/v1/gonum/mat"
 )
 
 // For a chain with one-step jumps the risk never falls when the threshold, the
@@ -114,10 +116,31 @@ func TestOutgrown(t *testing.T) {
 	if want := 1 - (1-math.Pow(q, 4))/(1-math.Pow(q, 30)); !(math.Abs(a.Risk-want) < 1e-9+a.Error) {
 		t.Errorf("risk %.12g, gambler's ruin %.12g", a.Risk, want)
 	}
-	b := answer(t, pulse(4, 0, 400, 0.5, 0.3).with(set{"run.stop_above": 29}))
-	c := answer(t, pulse(4, 0, 400, 0.5, 0.3))
-	if !(b.Risk < c.Risk) || !(b.Risk > c.Risk-0.05) {
-		t.Errorf("pulse: risk %.6g with replicates stopped at 29, %.6g without", b.Risk, c.Risk)
+	// A pulse year: the dense chain, everything above 29 taken out after births.
+	keys := pulse(4, 0, 30, 0.5, 0.3)
+	m := model(t, keys)
+	d := &dense{m: m, c: m.Case, size: 90}
+	year := d.live(1, 0.5, -math.Log(0.7), false)
+	v := mat.NewVecDense(90, nil)
+	v.SetVec(4, 1)
+	for y := 0; y < 30; y++ {
+		next := mat.NewVecDense(90, nil)
+		next.MulVec(year.T(), v)
+		for n := 30; n < 90; n++ {
+			next.SetVec(n, 0)
+		}
+		v = next
+	}
+	b := answer(t, keys.with(set{"run.stop_above": 29}))
+	if want := v.AtVec(0); !(math.Abs(b.Risk-want) < 1e-10+b.Error) || b.Risk != b.Extinction {
+		t.Errorf("pulse: risk %.12g, extinct %.12g, dense chain %.12g", b.Risk, b.Extinction, want)
+	}
+	mean, mass := 0.0, 0.0
+	for n := 0; n < 30; n++ {
+		mean, mass = mean+float64(n)*v.AtVec(n), mass+v.AtVec(n)
+	}
+	if got := b.Mean[29]; !(math.Abs(got-mean/mass) < 1e-8) {
+		t.Errorf("pulse: mean of those not outgrown %.12g, dense chain %.12g", got, mean/mass)
 	}
 }
 

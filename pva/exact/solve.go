@@ -41,7 +41,9 @@ type Options struct {
 	// Stated takes uncertain inputs at the values the case states instead of
 	// refusing them: for one draw, whose values have been put into the case.
 	Stated bool
-	// Most is the largest number of operations; 0 stands for Most.
+	// Most is the largest number of operations; 0 stands for Most for what Cost
+	// counts, and for four times that count (or Cheap, if that is more) for all
+	// runs together, further ones that lower the error included.
 	Most float64
 	// Top is the largest state; 0 lets Solve choose.
 	Top int
@@ -106,7 +108,7 @@ func (p *plan) solve(ctx context.Context) (*pva.ExactAnswer, error) {
 // spent operations already done. Orders and states grow by at least a quarter
 // each time, so that the runs come to an end.
 func (p *plan) affords(s setting, spent float64) bool {
-	return p.memory(s) <= mostBytes && spent+p.ops(s) <= p.most
+	return p.memory(s) <= mostBytes && spent+p.ops(s) <= p.further
 }
 
 func difference(a, b []float64) float64 {

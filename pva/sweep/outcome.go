@@ -98,7 +98,9 @@ func (r *Session) outcome(g, place int) *Outcome {
 			if p == place {
 				base := &r.state[g].tallies[1+b]
 				risk := estimate.Proportion(base.Fallen[checkpoints-1], base.Replicates, about.confidence)
-				added := paired(t.OnlyThisNotBase, t.OnlyBase, o.Risk, about.confidence)
+				// The other way round first, as an assessment does, so that the
+				// two agree to the last bit.
+				added := estimate.Reversed(paired(t.OnlyBase, t.OnlyThisNotBase, risk, about.confidence))
 				o.Baseline, o.Added = &risk, &added
 			}
 		}

@@ -165,12 +165,12 @@ func TestDamagedUnits(t *testing.T) {
 	}
 }
 
-const helperDir = "EBBLINE_TEST_LEDGER"
+const killDir = "EBBLINE_TEST_LEDGER"
 
-// TestHelperRun is run in a process of its own by TestKill: a run with a ledger,
+// TestRunToKill is run in a process of its own by TestKill: a run with a ledger,
 // which says on standard output how many units it has finished.
-func TestHelperRun(t *testing.T) {
-	dir := os.Getenv(helperDir)
+func TestRunToKill(t *testing.T) {
+	dir := os.Getenv(killDir)
 	if dir == "" {
 		t.Skip("only runs for TestKill")
 	}
@@ -188,7 +188,7 @@ func TestHelperRun(t *testing.T) {
 // TestKill kills a process at random moments: no finished unit is lost, and the
 // run ends with the figures of an undisturbed one.
 func TestKill(t *testing.T) {
-	if os.Getenv(helperDir) != "" {
+	if os.Getenv(killDir) != "" {
 		t.Skip()
 	}
 	s := grid(t, wide(t))
@@ -199,8 +199,8 @@ func TestKill(t *testing.T) {
 	dir := filepath.Join(t.TempDir(), "l")
 	held, partial := 0, 0
 	for kill := 0; kill < *kills; kill++ {
-		cmd := exec.Command(os.Args[0], "-test.run=^TestHelperRun$")
-		cmd.Env = append(os.Environ(), helperDir+"="+dir)
+		cmd := exec.Command(os.Args[0], "-test.run=^TestRunToKill$")
+		cmd.Env = append(os.Environ(), killDir+"="+dir)
 		out, err := cmd.StdoutPipe()
 		if err != nil {
 			t.Fatal(err)
