@@ -41,7 +41,7 @@ type campaign struct {
 
 var (
 	shortCampaign = campaign{cases: 60, fast: 4000, plain: 800}
-	longCampaign  = campaign{cases: 1500, fast: 20000, plain: 4000}
+	longCampaign  = campaign{cases: 600, fast: 20000, plain: 4000}
 )
 
 func TestCampaign(t *testing.T) {
