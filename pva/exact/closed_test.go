@@ -155,3 +155,12 @@ func TestCriticalTakeForm(t *testing.T) {
 		}
 	}
 }
+
+// Births that explode by the calendar have no exact answer, and saying so costs
+// nothing: one row of their law would be longer than memory.
+func TestExplosiveBirthsAreRefused(t *testing.T) {
+	m := closedCase(t, "question.threshold", 5, "question.horizon", 60, "start.abundance", 50, "births.breeding", "pulse", "births.rate", .4, "births.trend", 5.0, "deaths.fraction", .3)
+	if _, ok, reason := Cost(m); ok || reason == "" {
+		t.Errorf("births of 6^59 times 0.4 a head: ok %v, reason %q", ok, reason)
+	}
+}

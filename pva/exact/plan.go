@@ -94,6 +94,9 @@ func (p *plan) perWeather() string {
 	return fmt.Sprintf(" for each of %d states of the weather, which has memory,", p.nodes(p.first))
 }
 
+// mostBirths is the largest number of births a head in a year.
+const mostBirths = 10000
+
 // refusal says why a case has no exact answer whatever its size.
 func refusal(m *rates.Model, opt Options) string {
 	c := m.Case
@@ -116,6 +119,13 @@ func refusal(m *rates.Model, opt Options) string {
 				}
 				return fmt.Sprintf("the take %s keeps the estimate of its survey for %d years, so that the population's future depends on the estimate beside N", name, t.Rule.SurveyEvery)
 			}
+		}
+	}
+	for y, f := range m.BirthCalendar {
+		// Beyond this a single row of the law of the young is longer than any
+		// table of states.
+		if births := m.Birth.Mean * f * math.Exp(5*m.Birth.Sigma); births > mostBirths {
+			return fmt.Sprintf("births reach %.0e a head by year %d, more than the %d whose law is followed", births, c.Label(y+1), mostBirths)
 		}
 	}
 	if n := len(factorsOf(c)); n > mostFactors {
