@@ -138,6 +138,9 @@ type Assessment struct {
 	ToDecide      int64 // about how many replicates would settle an undecided verdict
 	Substeps      *SubstepBound
 	Closed        []ClosedForm // published formulas beside the answer
+	// Sequential says that replicates were added until the verdict was settled:
+	// the intervals of the risks are then of a confidence sequence.
+	Sequential bool
 	// Uncertainty is what the draws of uncertain inputs say, nil where none is
 	// uncertain. Where it is there, the intervals of probabilities and of
 	// differences of risks are intervals between draws.

@@ -1,6 +1,7 @@
 package main
 
 import (
+	"context"
 	"errors"
 	"fmt"
 	"io"
@@ -24,6 +25,7 @@ type assessOptions struct {
 	workers        int
 	failAboveLimit bool
 	exact, noExact bool
+	untilDecided   bool
 }
 
 func newAssess(a *app) *cobra.Command {
@@ -43,6 +45,7 @@ report workbook beside the case (or to --out).
 	o.caseInput.addFlags(cmd.Flags())
 	o.outputs.addFlags(cmd.Flags())
 	cmd.Flags().IntVar(&o.workers, "workers", 0, "how many replicates run side by side (default: all cores)")
+	cmd.Flags().BoolVar(&o.untilDecided, "until-decided", false, "add replicates until the verdict is settled, with an interval that holds under repeated looks")
 	cmd.Flags().BoolVar(&o.exact, "exact", false, "add the exact answer even where it is dear")
 	cmd.Flags().BoolVar(&o.noExact, "no-exact", false, "leave the exact answer out")
 	cmd.Flags().BoolVar(&o.failAboveLimit, "fail-above-limit", false, "end with exit status 3 if the verdict is above the limit")
@@ -72,9 +75,7 @@ func (a *app) assess(o *assessOptions, args []string) error {
 	}
 	ctx, stop := a.interruptible()
 	defer stop()
-	progress, finish := progressBar(a.errs, c.Run.Replicates, o.quiet)
-	result, runErr := assess.Run(ctx, c, assess.Options{Workers: o.workers, Progress: progress, Exact: wish})
-	finish()
+	result, runErr := o.run(ctx, a, c, wish)
 	if result == nil {
 		if runErr != nil && ctx.Err() != nil {
 			return errors.New("interrupted before any replicate was complete; nothing was written")
@@ -85,7 +86,7 @@ func (a *app) assess(o *assessOptions, args []string) error {
 		return runErr
 	}
 	about := meta(c, name, "assess", o.example)
-	about.Command += exactFlag(wish)
+	about.Command += exactFlag(wish) + untilFlag(o.untilDecided)
 	report := reports.Build(result, about)
 	if err := o.write(a, report, result, book); err != nil {
 		return err
@@ -107,6 +108,25 @@ func (a *app) assess(o *assessOptions, args []string) error {
 		return errAboveLimit
 	}
 	return nil
+}
+
+// run assesses the case once, or until its verdict is settled.
+func (o *assessOptions) run(ctx context.Context, a *app, c *pva.Case, wish assess.ExactWish) (*pva.Assessment, error) {
+	opt := assess.Options{Workers: o.workers, Exact: wish}
+	if o.untilDecided {
+		s, err := assess.UntilDecided(ctx, c, opt, 0)
+		if s == nil {
+			if errors.Is(err, assess.ErrNoLimit) || errors.Is(err, assess.ErrUncertain) {
+				err = badInput{err}
+			}
+			return nil, err
+		}
+		return s.Assessment, err
+	}
+	progress, finish := progressBar(a.errs, c.Run.Replicates, o.quiet)
+	opt.Progress = progress
+	defer finish()
+	return assess.Run(ctx, c, opt)
 }
 
 // say prints text for people: on standard output, or on standard error where

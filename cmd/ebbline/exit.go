@@ -48,6 +48,8 @@ func (a *app) status(err error) int {
 	switch {
 	case errors.Is(err, errAboveLimit):
 		return statusAboveLimit
+	case errors.Is(err, errDisagrees):
+		return statusDisagrees
 	case errors.As(err, &faults):
 		fmt.Fprintln(a.errs, strings.TrimRight(faults.Error(), "\n"))
 		return statusBadInput

@@ -27,7 +27,7 @@ var mayImport = map[string][]string{
 	"pva/estimate":              {"pva"},
 	"pva/assess":                {"pva", "pva/draws", "pva/rates", "pva/year", "pva/ensemble", "pva/exact", "pva/estimate"},
 	"pva/plain":                 {"pva"},
-	"reports":                   {"pva", "pva/estimate"},
+	"reports":                   {"pva", "pva/estimate", "pva/sweep"},
 	"reports/internal/invented": {"pva", "pva/estimate"}, // an assessment for tests of the renderers
 	"pva/sweep":                 {"pva", "pva/rates", "pva/year", "pva/ensemble", "pva/exact", "pva/estimate", "pva/assess", "pva/sweep/ledger"},
 	"pva/sweep/ledger":          {"pva"},
@@ -37,11 +37,11 @@ var mayImport = map[string][]string{
 	"reports/workbook":          {"reports", "pva"},
 	"reports/text":              {"reports", "pva", "pva/rates", "pva/sweep", "pva/fit"},
 	"reports/tidy":              {"reports", "pva", "pva/sweep", "pva/fit"},
-	"cmd/ebbline":               {"pva", "pva/assess", "pva/casefile", "pva/casefile/examples", "pva/casefile/sheet", "pva/estimate", "pva/exact", "pva/rates", "pva/sweep", "pva/fit", "reports", "reports/text", "reports/tidy", "reports/workbook", "reports/figure"},
+	"cmd/ebbline":               {"pva", "pva/assess", "pva/casefile", "pva/casefile/examples", "pva/casefile/sheet", "pva/estimate", "pva/exact", "pva/rates", "pva/sweep", "pva/sweep/ledger", "pva/fit", "reports", "reports/text", "reports/tidy", "reports/workbook", "reports/figure"},
 }
 
 // testsMayImport adds what test files may import besides.
-var testsMayImport = []string{"pva", "pva/rates", "pva/year", "pva/ensemble", "pva/estimate", "pva/exact", "pva/plain", "pva/casefile", "pva/casefile/examples", "pva/assess", "rng", "rng/portable", "reports", "reports/internal/invented"}
+var testsMayImport = []string{"pva", "pva/rates", "pva/year", "pva/ensemble", "pva/estimate", "pva/exact", "pva/plain", "pva/casefile", "pva/casefile/examples", "pva/assess", "pva/sweep", "rng", "rng/portable", "reports", "reports/internal/invented"}
 
 // onlyHere are outside packages that one room alone may import.
 var onlyHere = map[string]string{

@@ -34,6 +34,6 @@ law, agency guidance and a qualified biologist's judgement come first.
 		SilenceUsage:  true,
 	}
 	root.CompletionOptions.HiddenDefaultCmd = false
-	root.AddCommand(newAssess(a), newExact(a), newCheck(a), newNew(a), newExample(a), newFit(a), newVersion(a))
+	root.AddCommand(newAssess(a), newExact(a), newCheck(a), newNew(a), newExample(a), newFit(a), newSweep(a), newMinimum(a), newMerge(a), newRerun(a), newVersion(a))
 	return root
 }

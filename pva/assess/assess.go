@@ -79,7 +79,7 @@ func Run(ctx context.Context, c *pva.Case, opt Options) (*pva.Assessment, error)
 		}
 	}
 	risk, name := a.Outcome.Risk.Estimate, "the simulated risk"
-	if a.Exact != nil && a.Exact.Reason == "" {
+	if known(a.Exact) {
 		risk, name = a.Exact.Risk, "the exact risk"
 	}
 	a.Closed = exact.ClosedForms(set[0].model, risk, name)

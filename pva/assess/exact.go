@@ -48,11 +48,7 @@ func addExact(ctx context.Context, a *pva.Assessment, set []variant, wish ExactW
 		if answer.Reason != "" {
 			continue
 		}
-		bound := rates.BoundSubsteps(v.model)
-		if bound != nil && bound.RiskBound > substepsTooCoarse {
-			continue // too wide a margin to hold one against the other; warned of
-		}
-		tail := exactTail(o.Risk, answer, bound)
+		tail := exactTail(o.Risk, answer, rates.BoundSubsteps(v.model))
 		if v.role == theCase {
 			a.ExactTail = tail
 		}
@@ -79,6 +75,9 @@ func exactOf(ctx context.Context, m *rates.Model, wish ExactWish, left *float64)
 // sub-steps may shift.
 func exactTail(p pva.Proportion, e *pva.ExactAnswer, s *pva.SubstepBound) float64 {
 	slack := e.Error
+	if s != nil && s.RiskBound > substepsTooCoarse {
+		return 1 // too wide a margin to hold one against the other; warned of
+	}
 	if s != nil {
 		slack += s.RiskBound
 	}

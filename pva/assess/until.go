@@ -8,6 +8,7 @@ import (
 	"ebbline/pva"
 	"ebbline/pva/ensemble"
 	"ebbline/pva/estimate"
+	"ebbline/pva/exact"
 	"ebbline/pva/rates"
 	"ebbline/pva/year"
 )
@@ -162,6 +163,12 @@ func (s *Settled) state(c *pva.Case, set []variant, tallies []*pva.Tally, first 
 			a.Unreliable = a.Unreliable || tail < disagree
 		}
 	}
+	a.Sequential = true
+	risk, name := a.Outcome.Risk.Estimate, "the simulated risk"
+	if known(a.Exact) {
+		risk, name = a.Exact.Risk, "the exact risk"
+	}
+	a.Closed = exact.ClosedForms(set[0].model, risk, name)
 	decide(a)
 	s.Decided = a.Verdict != pva.Undecided
 	return a

@@ -216,7 +216,7 @@ func (p *plan) chooseTop(opt Options) {
 	}
 	limit := math.Inf(1)
 	if c.Run.StopAbove < reachMost {
-		limit = math.Floor(c.Run.StopAbove)
+		limit = math.Floor(c.Run.StopAbove) + firstAdditions(c)
 	}
 	all, risk = math.Min(all, limit), math.Min(risk, limit)
 	if risk > reachMost {

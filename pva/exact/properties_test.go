@@ -117,7 +117,8 @@ func TestOutgrown(t *testing.T) {
 		t.Errorf("risk %.12g, gambler's ruin %.12g", a.Risk, want)
 	}
 	// A pulse year: the dense chain, everything above 29 taken out after births.
-	keys := pulse(4, 0, 30, 0.5, 0.3)
+	// Stocking at the start may lift N above it, which is not yet looked at.
+	keys := pulse(4, 0, 30, 0.5, 0.3).with(set{"stocking.1.add": 3, "stocking.1.when": "start", "stocking.1.years": "20-"})
 	m := model(t, keys)
 	d := &dense{m: m, c: m.Case, size: 90}
 	year := d.live(1, 0.5, -math.Log(0.7), false)
@@ -125,6 +126,10 @@ func TestOutgrown(t *testing.T) {
 	v.SetVec(4, 1)
 	for y := 0; y < 30; y++ {
 		next := mat.NewVecDense(90, nil)
+		if y >= 19 {
+			next.MulVec(d.stock(m.Case.Stocking[0]).T(), v)
+			v, next = next, mat.NewVecDense(90, nil)
+		}
 		next.MulVec(year.T(), v)
 		for n := 30; n < 90; n++ {
 			next.SetVec(n, 0)
@@ -132,8 +137,8 @@ func TestOutgrown(t *testing.T) {
 		v = next
 	}
 	b := answer(t, keys.with(set{"run.stop_above": 29}))
-	if want := v.AtVec(0); !(math.Abs(b.Risk-want) < 1e-10+b.Error) || !(math.Abs(b.Risk-b.Extinction) < 1e-12) {
-		t.Errorf("pulse: risk %.12g, extinct %.12g, dense chain %.12g", b.Risk, b.Extinction, want)
+	if want := v.AtVec(0); !(math.Abs(b.Extinction-want) < 1e-10+b.Error) {
+		t.Errorf("pulse: extinct %.12g, dense chain %.12g", b.Extinction, want)
 	}
 	mean, mass := 0.0, 0.0
 	for n := 0; n < 30; n++ {

@@ -408,16 +408,23 @@ func ceilingTop(c *pva.Case) (float64, bool) {
 			return 0, false
 		}
 	}
-	top := math.Floor(c.Ceiling.Value)
+	return math.Max(math.Floor(c.Ceiling.Value)+firstAdditions(c), startReach(c)), true
+}
+
+// firstAdditions is the most that stocking at the start of a pulse year adds,
+// before anything looks at how large N is; 0 in a flow year, where that is
+// looked at at once.
+func firstAdditions(c *pva.Case) float64 {
+	most := 0.0
 	for _, s := range c.Stocking {
-		if s.When == "start" {
-			top += math.Ceil(s.Add)
+		if s.When == "start" && c.Births.Breeding == "pulse" {
+			most += math.Ceil(s.Add)
 			if s.Noise == "poisson" {
-				top += 9*math.Sqrt(s.Add) + 30
+				most += 9*math.Sqrt(s.Add) + 30
 			}
 		}
 	}
-	return math.Max(top, startReach(c)), true
+	return most
 }
 
 // startReach is a population beyond which the first one hardly ever is.

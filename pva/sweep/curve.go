@@ -45,7 +45,7 @@ type Point struct {
 
 // curve is what is known of the risk along an axis.
 type curve struct {
-	r      *Session
+	r      *Runner
 	a      axis
 	points []*Point // by rising u
 	exact  bool     // whether exact answers are wanted where they are cheap

@@ -49,7 +49,7 @@ func marsh(t testing.TB, more ...any) *pva.Case {
 		"run.replicates", 1000, "run.seed", 11}, more...)...)
 }
 
-func open(t testing.TB, s *Study, opt Options) *Session {
+func open(t testing.TB, s *Study, opt Options) *Runner {
 	t.Helper()
 	if opt.Workers == 0 {
 		opt.Workers = 2

@@ -16,7 +16,7 @@ import (
 // replicates where the verdict is in doubt. With several dimensions it follows
 // the take (the first one that is), and the other keys stay as the case states
 // them. The grid's result, which may be nil, says where to begin.
-func (r *Session) Largest(ctx context.Context, grid *Result, opt SearchOptions) (*Crossing, error) {
+func (r *Runner) Largest(ctx context.Context, grid *Result, opt SearchOptions) (*Crossing, error) {
 	d := r.study.searched()
 	dim := r.study.Dimensions[d]
 	a := axis{key: dim.Key, path: dim.Path, unit: dim.Unit, tag: "largest", whole: wholeBy(dim), rising: true,
@@ -146,7 +146,7 @@ func thin(values []float64, n int) []float64 {
 }
 
 // falls says whether the risk at the largest value is below that at the smallest.
-func (r *Session) falls(ctx context.Context, a axis, opt SearchOptions) (bool, error) {
+func (r *Runner) falls(ctx context.Context, a axis, opt SearchOptions) (bool, error) {
 	c := &curve{r: r, a: a, exact: !opt.NoExact}
 	if err := c.look(ctx, []float64{a.from, a.to}, r.study.Base.Run.Replicates); err != nil {
 		return false, err

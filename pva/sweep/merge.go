@@ -10,13 +10,13 @@ import (
 // ErrMissing is wrapped by the error of a merge to which units are missing.
 var ErrMissing = errors.New("not all of the sweep is there")
 
-// Merge reads the ledgers of a study's shards into one session, which keeps no
+// Merge reads the ledgers of a study's shards into one runner, which keeps no
 // ledger of its own. A ledger of another case, version, seed or grid is refused
 // with the difference named; so is a unit of which two ledgers hold different
 // figures. If units are missing the error names them and wraps ErrMissing, and
-// the session holds what is there.
-func Merge(s *Study, dirs []string, opt Options) (*Session, error) {
-	r := newSession(s, opt)
+// the runner holds what is there.
+func Merge(s *Study, dirs []string, opt Options) (*Runner, error) {
+	r := newRunner(s, opt)
 	m := r.manifest()
 	from := map[string]source{}
 	for _, dir := range dirs {
@@ -54,7 +54,7 @@ type source struct {
 
 // missingShards says to which shards the missing units belong, where one number
 // of shards explains all of them.
-func (r *Session) missingShards() string {
+func (r *Runner) missingShards() string {
 	for n := 2; n <= min(1000, len(r.done)); n++ {
 		var gone []int
 		for i := range n {

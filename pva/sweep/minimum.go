@@ -141,7 +141,7 @@ func (q *Sizes) settings(c *pva.Case, size float64) []pva.Setting {
 const firstSizes = 9
 
 // Smallest searches for the smallest viable size.
-func (r *Session) Smallest(ctx context.Context, q *Sizes, opt SearchOptions) (*Crossing, error) {
+func (r *Runner) Smallest(ctx context.Context, q *Sizes, opt SearchOptions) (*Crossing, error) {
 	c := r.study.Base
 	a := axis{key: "size", path: "size", unit: "counting units", tag: "size", whole: true, rising: false, strict: true,
 		from: q.From, to: q.To, limit: q.Risk, confidence: c.Question.Confidence,

@@ -55,7 +55,7 @@ type Result struct {
 // Whole says whether every cell is complete.
 func (r *Result) Whole() bool { return r.Complete == len(r.Cells) }
 
-func (r *Session) result() *Result {
+func (r *Runner) result() *Result {
 	s := r.study
 	out := &Result{Study: s, Seed: s.Base.Run.Seed, Replicates: s.Base.Run.Replicates, Cells: make([]*Outcome, s.n), Units: r.units()}
 	for u, done := range r.done {
@@ -85,7 +85,7 @@ func (r *Session) result() *Result {
 }
 
 // outcome is the cell at a place of a group.
-func (r *Session) outcome(g, place int) *Outcome {
+func (r *Runner) outcome(g, place int) *Outcome {
 	gr := r.plan.groups[g]
 	i := gr.cells[place]
 	about := r.study.facts[i]

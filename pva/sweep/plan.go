@@ -208,7 +208,7 @@ type engines struct {
 }
 
 // compiledGroup builds a group's engine once for all workers.
-func (r *Session) compiledGroup(g int) (*compiled, error) {
+func (r *Runner) compiledGroup(g int) (*compiled, error) {
 	e := &r.plan.engines
 	e.mu.Lock()
 	if e.open == nil {

@@ -14,7 +14,7 @@ import (
 // afterwards. If the context ends, the units in work are given up and the
 // result holds the cells that are complete, with the context's error. If the
 // ledger can't be written the run ends with its error; what it holds is good.
-func (r *Session) Run(ctx context.Context) (*Result, error) {
+func (r *Runner) Run(ctx context.Context) (*Result, error) {
 	var todo []int
 	total := int64(0)
 	for u, done := range r.done {
@@ -42,7 +42,7 @@ func (r *Session) Run(ctx context.Context) (*Result, error) {
 }
 
 // announce hands out cells that the ledger held whole.
-func (r *Session) announce() {
+func (r *Runner) announce() {
 	for g := range r.state {
 		if r.state[g].ranges == r.plan.ranges {
 			r.handOut(g)
@@ -50,7 +50,7 @@ func (r *Session) announce() {
 	}
 }
 
-func (r *Session) handOut(g int) {
+func (r *Runner) handOut(g int) {
 	if r.opt.Finished == nil {
 		return
 	}
@@ -63,7 +63,7 @@ func (r *Session) handOut(g int) {
 
 // each runs n pieces of work over the workers, in order of their numbers. The
 // first error, or the end of the context, stops the others.
-func (r *Session) each(ctx context.Context, n int, work func(ctx context.Context, i int) error) error {
+func (r *Runner) each(ctx context.Context, n int, work func(ctx context.Context, i int) error) error {
 	inner, stop := context.WithCancel(ctx)
 	defer stop()
 	var next atomic.Int64
@@ -102,7 +102,7 @@ func (r *Session) each(ctx context.Context, n int, work func(ctx context.Context
 }
 
 // compute simulates one unit.
-func (r *Session) compute(ctx context.Context, u int, progress func(cellReplicates int64)) ([]Tally, error) {
+func (r *Runner) compute(ctx context.Context, u int, progress func(cellReplicates int64)) ([]Tally, error) {
 	g, first, replicates := r.plan.unit(u)
 	c, err := r.compiledGroup(g)
 	if err != nil {
@@ -124,7 +124,7 @@ func (r *Session) compute(ctx context.Context, u int, progress func(cellReplicat
 }
 
 // finish writes a unit into the ledger, and hands out the cells that it completes.
-func (r *Session) finish(u int, tallies []Tally) error {
+func (r *Runner) finish(u int, tallies []Tally) error {
 	if r.ledger != nil {
 		var data []byte
 		for i := range tallies {

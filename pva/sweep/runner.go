@@ -35,9 +35,9 @@ type Options struct {
 	Finished func(cells []*Outcome)
 }
 
-// Session is a study being run: its cut into units, its ledger, and what is
+// Runner is a study being run: its cut into units, its ledger, and what is
 // known so far. Close it.
-type Session struct {
+type Runner struct {
 	opt    Options
 	study  *Study
 	plan   *plan
@@ -64,14 +64,14 @@ type groupState struct {
 var ErrHolds = errors.New("already holds some of this very run")
 
 // Open prepares a study and reads its ledger.
-func Open(s *Study, opt Options) (*Session, error) {
+func Open(s *Study, opt Options) (*Runner, error) {
 	if opt.Workers <= 0 {
 		opt.Workers = runtime.NumCPU()
 	}
 	if opt.Shards < 0 || opt.Shard < 0 || opt.Shard > opt.Shards || (opt.Shards > 0 && opt.Shard == 0) {
 		return nil, fmt.Errorf("shard %d of %d: give a number from 1 to the number of shards", opt.Shard, opt.Shards)
 	}
-	r := newSession(s, opt)
+	r := newRunner(s, opt)
 	if opt.Ledger == "" {
 		return r, nil
 	}
@@ -107,8 +107,8 @@ func Open(s *Study, opt Options) (*Session, error) {
 	return r, nil
 }
 
-func newSession(s *Study, opt Options) *Session {
-	r := &Session{opt: opt, study: s, plan: newPlan(s), points: map[string][]uint64{}}
+func newRunner(s *Study, opt Options) *Runner {
+	r := &Runner{opt: opt, study: s, plan: newPlan(s), points: map[string][]uint64{}}
 	r.state = make([]groupState, len(r.plan.groups))
 	for g := range r.state {
 		r.state[g].tallies = make([]Tally, r.plan.groups[g].variants())
@@ -118,20 +118,20 @@ func newSession(s *Study, opt Options) *Session {
 }
 
 // Close closes the ledger.
-func (r *Session) Close() error {
+func (r *Runner) Close() error {
 	if r.ledger == nil {
 		return nil
 	}
 	return r.ledger.Close()
 }
 
-// mine says whether a unit is of this session's shard.
-func (r *Session) mine(u int) bool {
+// mine says whether a unit is of this runner's shard.
+func (r *Runner) mine(u int) bool {
 	return r.opt.Shards == 0 || u%r.opt.Shards == r.opt.Shard-1
 }
 
-// units is how many units this session's shard has.
-func (r *Session) units() int {
+// units is how many units this runner's shard has.
+func (r *Runner) units() int {
 	n := 0
 	for u := range r.done {
 		if r.mine(u) {
@@ -141,7 +141,7 @@ func (r *Session) units() int {
 	return n
 }
 
-func (r *Session) manifest() ledger.Manifest {
+func (r *Runner) manifest() ledger.Manifest {
 	c := r.study.Base
 	var overridden []string
 	for _, e := range c.Entries() {
@@ -158,11 +158,11 @@ func (r *Session) manifest() ledger.Manifest {
 }
 
 // read takes in what a ledger holds.
-func (r *Session) read(l *ledger.Ledger) error { return r.readOnce(l, map[string]source{}) }
+func (r *Runner) read(l *ledger.Ledger) error { return r.readOnce(l, map[string]source{}) }
 
 // readOnce takes in what a ledger holds beyond what was read from others, which
 // must hold the same where both hold something.
-func (r *Session) readOnce(l *ledger.Ledger, from map[string]source) error {
+func (r *Runner) readOnce(l *ledger.Ledger, from map[string]source) error {
 	damage, err := l.Read(func(key string, data []byte) error {
 		sum := maphash.Bytes(recordSeed, data)
 		if had, twice := from[key]; twice {
@@ -206,7 +206,7 @@ const (
 )
 
 // takeUnit adds a unit's record to its group.
-func (r *Session) takeUnit(u int, data []byte) error {
+func (r *Runner) takeUnit(u int, data []byte) error {
 	g, _, replicates := r.plan.unit(u)
 	s := &r.state[g]
 	tallies := make([]Tally, len(s.tallies))
@@ -226,7 +226,7 @@ func (r *Session) takeUnit(u int, data []byte) error {
 	return nil
 }
 
-func (r *Session) add(u int, tallies []Tally) {
+func (r *Runner) add(u int, tallies []Tally) {
 	g := u / r.plan.ranges
 	s := &r.state[g]
 	for i := range tallies {
@@ -237,7 +237,7 @@ func (r *Session) add(u int, tallies []Tally) {
 }
 
 // Missing names the units that are not done, as ranges: "3, 7 to 9".
-func (r *Session) Missing() string {
+func (r *Runner) Missing() string {
 	var parts []string
 	for u := 0; u < len(r.done); u++ {
 		if r.done[u] {

@@ -88,7 +88,7 @@ const (
 )
 
 // cross searches an axis.
-func (r *Session) cross(ctx context.Context, a axis, opt SearchOptions) (*Crossing, error) {
+func (r *Runner) cross(ctx context.Context, a axis, opt SearchOptions) (*Crossing, error) {
 	c := &curve{r: r, a: a, exact: !opt.NoExact}
 	start := r.study.Base.Run.Replicates
 	most := opt.Most

@@ -213,6 +213,13 @@ func verdictOf(v pva.Verdict) any {
 // JSON is an assessment as an indented JSON document.
 func JSON(a *pva.Assessment, version, command string) ([]byte, error) {
 	o := a.Outcome
+	proportionOf := func(p pva.Proportion) *proportion {
+		out := proportionOf(p)
+		if a.Sequential {
+			out.Interval = "sequence"
+		}
+		return out
+	}
 	d := document{Program: "ebbline", Version: version, Command: command, Case: caseID{a.Case.Title, a.Case.Digest()}, Seed: &a.Seed, Replicates: &a.Replicates,
 		Question: questionOf(a.Case), Risk: proportionOf(o.Risk), Extinction: plainProportion(o.Extinction), Verdict: verdictOf(a.Verdict), Years: yearsOf(o),
 		MeanLogGrowth: ref(o.MeanLogGrowth), Outgrown: &o.Outgrown, TakeTotal: ref(o.TakeTotalMean), Exact: exactOf(a.Exact), Unreliable: a.Unreliable, Warnings: []string{}}
