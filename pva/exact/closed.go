@@ -30,6 +30,22 @@ func ClosedForms(m *rates.Model, risk float64, riskName string) []pva.ClosedForm
 	add(beside(diffusion(m)))
 	add(blowUp(m))
 	add(criticalTake(m))
+	return append(out, rests(m)...)
+}
+
+// rests are the populations at which the mean path of a mean year rests, takes
+// and additions included.
+func rests(m *rates.Model) []pva.ClosedForm {
+	var out []pva.ClosedForm
+	for i, e := range m.Equilibria() {
+		kind := "unstable: the mean path moves away from it"
+		if e.Stable {
+			kind = "stable: the mean path returns to it"
+		}
+		out = append(out, pva.ClosedForm{Name: fmt.Sprintf("resting place %d of the mean path", i+1), Unit: m.Case.Counts, Value: e.N,
+			Note:   kind + "; no weather, no catastrophes, rules of one " + m.Case.TimeUnit + " in several averaged",
+			Source: "zero of the year's mean change, by bisection"})
+	}
 	return out
 }
 

@@ -144,6 +144,18 @@ func TestBlowUpForm(t *testing.T) {
 	}
 }
 
+// The logistic under a take of 100 rests at 276.3932 (unstable) and 723.6068
+// (Schaefer 1954).
+func TestRestsAreListed(t *testing.T) {
+	m := closedCase(t, "question.threshold", 0, "question.horizon", 10, "start.abundance", 900, "births.breeding", "flow", "births.rate", .8, "deaths.rate", .3,
+		"births.crowding.form", "linear", "births.crowding.capacity", 1000, "harvest.1.rule", "constant", "harvest.1.take", 100, "harvest.1.when", "through")
+	for name, want := range map[string]float64{"resting place 1 of the mean path": 276.3932023, "resting place 2 of the mean path": 723.6067977} {
+		if got := only(t, m, name).Value; math.Abs(got-want) > 1e-4 {
+			t.Errorf("%s: %v, want %v", name, got, want)
+		}
+	}
+}
+
 // Schaefer's largest take: r = 0.5, K = 1000: 125, wherever crowding acts.
 func TestCriticalTakeForm(t *testing.T) {
 	for _, side := range []string{"births", "deaths"} {
