@@ -73,13 +73,20 @@ func Solve(ctx context.Context, m *rates.Model, opt Options) (*pva.ExactAnswer, 
 // solve runs the plan at two orders of quadrature, with more states or at higher
 // orders while the stated error is too large and there are operations left.
 func (p *plan) solve(ctx context.Context) (*pva.ExactAnswer, error) {
-	var last *found // the run at the order below, on the same states
+	var last *found           // the run at the order below, on the same states
+	var best *pva.ExactAnswer // what the runs so far say
 	spent := 0.0
 	for s := p.first; ; {
 		spent += p.ops(s)
 		f, err := newRun(p.m, s).solve(ctx)
 		if err != nil {
 			return nil, fmt.Errorf("exact: %w", err)
+		}
+		if !finite(f) {
+			if best != nil {
+				return best, nil // its error says how far it is to be trusted
+			}
+			return &pva.ExactAnswer{Reason: "the numbers of the solution leave the range of a computer's"}, nil
 		}
 		if f.cutting > p.goal/4 && !p.fixed {
 			wider := s
@@ -96,6 +103,7 @@ func (p *plan) solve(ctx context.Context) (*pva.ExactAnswer, error) {
 			gap = 1 // nothing to compare with yet
 		}
 		a := p.answer(s, f, gap)
+		best = a
 		finer := p.finer(s)
 		if a.Error <= p.goal/2 || !p.inexact || !p.affords(finer, spent) {
 			return a, nil
@@ -108,7 +116,26 @@ func (p *plan) solve(ctx context.Context) (*pva.ExactAnswer, error) {
 // spent operations already done. Orders and states grow by at least a quarter
 // each time, so that the runs come to an end.
 func (p *plan) affords(s setting, spent float64) bool {
+	if p.climate.memory != 0 && s.order > mostGaussOrder {
+		return false
+	}
 	return p.memory(s) <= mostBytes && spent+p.ops(s) <= p.further
+}
+
+// mostGaussOrder is the highest order of a grid of Gauss points: beyond it the
+// Hermite polynomials that carry the weather on leave the range of doubles.
+const mostGaussOrder = 200
+
+// finite says whether every figure of a run is a number.
+func finite(f *found) bool {
+	for _, list := range [][]float64{f.fallen, f.extinct} {
+		for _, v := range list {
+			if math.IsNaN(v) || math.IsInf(v, 0) {
+				return false
+			}
+		}
+	}
+	return !math.IsNaN(f.cutting)
 }
 
 func difference(a, b []float64) float64 {
