@@ -176,3 +176,24 @@ func TestExplosiveBirthsAreRefused(t *testing.T) {
 		t.Errorf("births of 6^59 times 0.4 a head: ok %v, reason %q", ok, reason)
 	}
 }
+
+// An old count, exact or not, is remembered from year to year beside N: a rule
+// that looks at one has no exact answer, and a rule that does not has one.
+func TestOldCountsAreRefused(t *testing.T) {
+	base := []any{"question.threshold", 2, "question.horizon", 4, "start.abundance", 12, "births.breeding", "pulse", "births.rate", .4, "deaths.fraction", .3,
+		"harvest.1.when", "end", "harvest.1.survey_every", 2}
+	for _, r := range []struct {
+		more []any
+		ok   bool
+	}{
+		{[]any{"harvest.1.rule", "fraction", "harvest.1.fraction", .2}, false},
+		{[]any{"harvest.1.rule", "constant", "harvest.1.take", 1, "harvest.1.stop_below", 5}, false},
+		{[]any{"harvest.1.rule", "constant", "harvest.1.take", 1}, true},
+		{[]any{"harvest.1.rule", "fraction", "harvest.1.fraction", .2, "harvest.1.take_noise", "each-animal"}, true},
+		{[]any{"harvest.1.rule", "fraction", "harvest.1.fraction", .2, "harvest.1.one_year_in", 2}, true},
+	} {
+		if _, ok, reason := Cost(closedCase(t, append(append([]any{}, base...), r.more...)...)); ok != r.ok {
+			t.Errorf("%v: exact answer %v (%s), want %v", r.more, ok, reason, r.ok)
+		}
+	}
+}

@@ -5,6 +5,7 @@ import (
 	"math"
 	"strings"
 
+	"ebbline/pva"
 	"ebbline/pva/rates"
 )
 
@@ -94,6 +95,18 @@ func (p *plan) perWeather() string {
 	return fmt.Sprintf(" for each of %d states of the weather, which has memory,", p.nodes(p.first))
 }
 
+// looks says whether a rule depends on what was seen: then an old count, exact
+// or not, matters in years without a survey.
+func looks(h pva.Harvest) bool {
+	switch h.Rule {
+	case "constant", "by_year":
+		return h.StopBelow > 0
+	case "fraction":
+		return h.StopBelow > 0 || h.TakeNoise != "each-animal"
+	}
+	return true
+}
+
 // mostBirths is the largest number of births a head in a year.
 const mostBirths = 10000
 
@@ -108,7 +121,7 @@ func refusal(m *rates.Model, opt Options) string {
 		return "inputs are uncertain (" + strings.Join(keys, ", ") + "): each draw of them is a case of its own"
 	}
 	for i, t := range m.Takes {
-		if t.Rule.SurveyCV == 0 || t.First == 0 {
+		if t.First == 0 || t.Rule.When == "through" || !looks(t.Rule) {
 			continue
 		}
 		for y := range t.Scheduled {
