@@ -99,7 +99,7 @@ func (a *app) assess(o *assessOptions, args []string) error {
 		if result.Replicates == result.Asked {
 			return errors.New("interrupted while the exact answer was computed: the report holds all replicates; --no-exact leaves the exact answer out")
 		}
-		return fmt.Errorf("interrupted: the report holds the %d replicates that were complete; run again for all of them", result.Replicates)
+		return fmt.Errorf("interrupted: the report holds the %s replicates that were complete; run again for all of them", reports.Grouped(result.Replicates))
 	case runErr != nil:
 		return runErr
 	case result.Unreliable:
