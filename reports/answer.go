@@ -16,6 +16,9 @@ type Figure struct {
 	Text     string // the figure as a person reads it: "7.1 %", "3.1 points"
 	Interval string // "6.6 to 7.6 %", "" if it has none
 	Note     string // what else there is to say
+	// Lead is the figure to show first and Beside what stands next to it: where
+	// there is an exact answer, that one leads, because the verdict uses it.
+	Lead, Beside string
 	// Value is a probability, or for "added" a difference of two.
 	Value, Low, High float64
 	HasInterval      bool
@@ -47,8 +50,17 @@ func exactAnswer(e *pva.ExactAnswer) *pva.ExactAnswer {
 	return e
 }
 
+// errorText is the error of a computation as percent, one digit of it.
+func errorText(e float64) string { return Significant(100*e, 1) + " %" }
+
+// led puts an exact figure before the simulated one.
+func (f *Figure) led(exact string) {
+	f.Lead, f.Beside = exact, "exact; simulated "+strings.TrimSuffix(f.Text, " points")+", "+f.Interval
+}
+
 func proportionFigure(id, label string, p pva.Proportion) Figure {
-	return Figure{ID: id, Label: label, Text: Percent(p.Estimate, p.Of), Interval: PercentRange(p.Low, p.High, p.Of),
+	shown, interval := Percent(p.Estimate, p.Of), PercentRange(p.Low, p.High, p.Of)
+	return Figure{ID: id, Label: label, Text: shown, Interval: interval, Lead: shown, Beside: interval,
 		Value: p.Estimate, Low: p.Low, High: p.High, HasInterval: true, Count: p.Count, Of: p.Of}
 }
 
@@ -57,36 +69,58 @@ func figures(a *pva.Assessment) []Figure {
 	level := percentOf(a.Case.Question.Confidence)
 	risk := proportionFigure("risk", withTake(a), o.Risk)
 	risk.Note = level + " interval, " + counted(o.Risk.Of, "replicate")
-	if e := exactAnswer(a.Exact); e != nil {
-		risk.Note += "; exact " + Percent(e.Risk, 0)
+	if a.Sequential {
+		risk.Note = level + " interval that holds however often one looks (a confidence sequence), " + counted(o.Risk.Of, "replicate")
+	}
+	exact, base := exactAnswer(a.Exact), exactAnswer(a.BaselineExact)
+	if exact != nil {
+		risk.led(Percent(exact.Risk, 0))
 	}
 	out := []Figure{risk}
 	if a.Baseline != nil {
-		out = append(out, proportionFigure("baseline", "without the take", a.Baseline.Risk))
+		f := proportionFigure("baseline", "without the take", a.Baseline.Risk)
+		if base != nil {
+			f.led(Percent(base.Risk, 0))
+		} else if exact != nil {
+			f.Beside = "simulated, " + f.Interval
+		}
+		out = append(out, f)
 	}
 	if a.Added != nil {
-		out = append(out, differenceFigure(a))
+		f := differenceFigure(a)
+		if exact != nil && base != nil {
+			f.led(zeroless(Significant(100*(exact.Risk-base.Risk), 3)) + " points")
+		} else if exact != nil {
+			f.Beside = "simulated, " + f.Interval
+		}
+		out = append(out, f)
 	}
 	if limit := a.Case.Question.Limit; limit.Set {
-		out = append(out, Figure{ID: "limit", Label: "the permit's limit", Text: percentOf(limit.Value), Value: limit.Value, Note: string(a.Verdict)})
+		out = append(out, Figure{ID: "limit", Label: "the permit's limit", Text: percentOf(limit.Value), Lead: percentOf(limit.Value), Beside: string(a.Verdict), Value: limit.Value, Note: string(a.Verdict)})
 	}
-	if e := exactAnswer(a.Exact); e != nil {
-		out = append(out, Figure{ID: "exact", Label: "exact " + map[bool]string{true: "with the take", false: "risk"}[withTake(a) != "the risk"], Text: Percent(e.Risk, 0), Value: e.Risk,
-			Note: "without random numbers, error at most " + strconv.FormatFloat(e.Error, 'g', 2, 64)})
+	if exact != nil {
+		out = append(out, Figure{ID: "exact", Label: withTake(a) + ", exact", Text: Percent(exact.Risk, 0), Value: exact.Risk,
+			Note: "without random numbers, error at most " + errorText(exact.Error)})
 	}
-	if e := exactAnswer(a.BaselineExact); e != nil {
-		out = append(out, Figure{ID: "exact_baseline", Label: "exact without the take", Text: Percent(e.Risk, 0), Value: e.Risk})
+	if base != nil {
+		out = append(out, Figure{ID: "exact_baseline", Label: "without the take, exact", Text: Percent(base.Risk, 0), Value: base.Risk})
 	}
 	ext := proportionFigure("extinction", "none left at the last census", o.Extinction)
 	ext.Note = "no " + a.Case.Counts + " at the census of " + dateWords(a.Case, a.Case.Question.Horizon)
+	if exact != nil {
+		ext.led(Percent(exact.Extinction, 0))
+	}
 	return append(out, ext)
 }
 
 func differenceFigure(a *pva.Assessment) Figure {
 	d := *a.Added
 	f := Figure{ID: "added", Label: "the take adds", Value: d.Estimate, Low: d.Low, High: d.High, HasInterval: true}
-	f.Text = PointsText(d.Estimate, d.Of) + " points"
-	f.Interval = PointsText(d.Low, d.Of) + " to " + PointsText(d.High, d.Of)
+	// The ends have the decimals of the difference, so that they read alike.
+	digits := PercentDigits(math.Abs(d.Estimate), d.Of)
+	f.Text = pointsWith(d.Estimate, digits) + " points"
+	f.Interval = pointsWith(d.Low, digits) + " to " + pointsWith(d.High, digits)
+	f.Lead, f.Beside = f.Text, f.Interval
 	f.Note = "same " + a.Case.TimeUnit + "s compared: " + Grouped(d.OnlyThis) + " fell only with the take, " + Grouped(d.OnlyOther) + " only without"
 	return f
 }
@@ -109,7 +143,7 @@ func verdictText(a *pva.Assessment) string {
 	has := "the interval " + PercentRange(o.Low, o.High, o.Of)
 	exact := exactAnswer(a.Exact)
 	if exact != nil {
-		has = "the exact risk " + Percent(exact.Risk, 0)
+		has = "the exact risk" // the figure beside it
 	}
 	of := " the limit of " + percentOf(limit.Value)
 	var s string
@@ -225,8 +259,11 @@ func figuresTable(a *pva.Assessment, figures []Figure, z scores) *Table {
 		column("estimate", "Risk", "", pct).column("low", "Low", "", pct).column("high", "High", "", pct).
 		column("count", "Count", "", Format{Kind: Counts}).column("of", "Of", "", Format{Kind: Counts}).wide("note", "")
 	horizon := strconv.Itoa(a.Case.Question.Horizon)
-	for _, f := range figures {
+	for _, f := range exactFirst(figures) {
 		cells := map[string]Cell{"label": text(sentence(f.Label)), "note": text(sentence(f.Note))}
+		if r := f.ID; (r == "risk" || r == "baseline" || r == "extinction") && f.Lead != f.Text {
+			cells["label"] = text(sentence(f.Label) + ", simulated")
+		}
 		switch f.ID {
 		case "risk":
 			z.summary(cells, a.Outcome.Risk, "{years:"+horizon+":fallen_count}")
@@ -240,7 +277,7 @@ func figuresTable(a *pva.Assessment, figures []Figure, z scores) *Table {
 		default:
 			cells["estimate"] = num(f.Value)
 			if f.ID == "exact" || f.ID == "exact_baseline" {
-				cells["estimate"] = num(f.Value).as(Percents, 3)
+				cells["estimate"] = num(f.Value).as(Percents, exactDecimals(f.Value))
 			}
 			if f.ID == "limit" {
 				cells["estimate"] = num(f.Value).as(Percents, PercentDecimals(f.Value))
@@ -251,6 +288,32 @@ func figuresTable(a *pva.Assessment, figures []Figure, z scores) *Table {
 	}
 	b.t.Note = "Count is of replicates. Low and high are the ends of the " + percentOf(a.Case.Question.Confidence) + " interval."
 	return b.t
+}
+
+// exactFirst sets each exact figure above the simulated one that it goes with.
+func exactFirst(figures []Figure) []Figure {
+	var out []Figure
+	for _, f := range figures {
+		if f.ID == "exact" || f.ID == "exact_baseline" {
+			continue
+		}
+		for _, e := range figures {
+			if e.ID == "exact" && f.ID == "risk" || e.ID == "exact_baseline" && f.ID == "baseline" {
+				out = append(out, e)
+			}
+		}
+		out = append(out, f)
+	}
+	return out
+}
+
+// exactDecimals are those of an exact risk as Percent writes it.
+func exactDecimals(p float64) int {
+	if 100*p < leastPercent {
+		return 0
+	}
+	_, rest, _ := strings.Cut(Significant(100*p, 3), ".")
+	return len(rest)
 }
 
 // PercentDecimals is how many decimals write a given fraction in full as percent.

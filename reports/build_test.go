@@ -116,8 +116,20 @@ func TestNewcombeInCells(t *testing.T) {
 
 func TestVerdictSaysWhatItRestsOn(t *testing.T) {
 	a, r := built(t, invented.Case(), true)
-	if !strings.Contains(r.VerdictText, "the exact risk "+Percent(a.Exact.Risk, 0)) {
+	if !strings.Contains(r.VerdictText, "the exact risk lies") {
 		t.Errorf("with an exact answer the verdict rests on it: %s", r.VerdictText)
+	}
+	a.Exact.Risk = 0.0307
+	r = Build(a, Meta{})
+	risk := r.Figures[0]
+	if exact := Percent(a.Exact.Risk, 0); risk.Lead != exact || strings.Contains(r.VerdictText+risk.Beside+risk.Note, exact) {
+		t.Errorf("the exact risk %s does not lead, said once: %q, %q, %q", exact, risk.Lead, risk.Beside, r.VerdictText)
+	}
+	if want := "exact; simulated " + risk.Text + ", " + risk.Interval; risk.Beside != want {
+		t.Errorf("beside it stands %q, not %q", risk.Beside, want)
+	}
+	if f := r.Table("figures").Rows; f[0].ID != "exact" || f[1].ID != "risk" {
+		t.Errorf("the table starts with %s and %s", f[0].ID, f[1].ID)
 	}
 	a.Exact, a.Verdict, a.ToDecide = nil, pva.Undecided, 48000
 	if got := Build(a, Meta{}).VerdictText; !strings.Contains(got, "not shown to be within") || !strings.Contains(got, "48,000 replicates would settle it") {

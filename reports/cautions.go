@@ -49,6 +49,45 @@ func Cautions(c *pva.Case) (short, long []Caution) {
 	return short, long
 }
 
+// ExactCautions are those of an answer without random numbers alone.
+func ExactCautions(c *pva.Case) []Caution {
+	short, _ := Cautions(c)
+	for i := range short {
+		if short[i].Heading == inputHeading {
+			short[i].Short = "The error stated is that of the computation alone; it does not carry the uncertainty of the inputs."
+		}
+	}
+	return short
+}
+
+// besideExact words the cautions for an answer that is both exact and simulated.
+func besideExact(short []Caution) {
+	for i := range short {
+		if short[i].Heading == inputHeading && strings.HasPrefix(short[i].Short, "The interval is that of the replicates alone") {
+			short[i].Short = "The interval is that of the replicates alone and the exact answer's error that of the computation; neither carries the uncertainty of the inputs."
+		}
+	}
+}
+
+// Unsaid leaves out the short cautions whose matter a warning already states.
+func Unsaid(short []Caution, warnings []pva.Warning) []Caution {
+	for _, w := range warnings {
+		if w.Key != "births.year_sd" {
+			continue
+		}
+		var left []Caution
+		for _, s := range short {
+			if s.Heading != noiseHeading {
+				left = append(left, s)
+			}
+		}
+		return left
+	}
+	return short
+}
+
+const inputHeading, noiseHeading = "Uncertain inputs", "Noise"
+
 func lawCaution(c *pva.Case) Caution {
 	return Caution{
 		Heading: "Law and judgement come first",
@@ -71,7 +110,7 @@ func conditionalCaution(c *pva.Case) Caution {
 
 // inputCaution says what the interval carries and what not.
 func inputCaution(c *pva.Case) Caution {
-	w := Caution{Heading: "Uncertain inputs", References: []string{ludwig, fieberg}}
+	w := Caution{Heading: inputHeading, References: []string{ludwig, fieberg}}
 	if len(c.Uncertain) == 0 {
 		w.Short = "The interval is that of the replicates alone; it does not carry the uncertainty of the inputs."
 		w.Text = "The intervals say how far the risk could move if the same case were simulated again with other random numbers. They do not say how far it could move if the inputs were wrong: no input is marked uncertain in this case. "
@@ -102,7 +141,7 @@ func uncertainKeys(c *pva.Case) []string {
 // leftOutCaution names what this case's model has no place for.
 func leftOutCaution(c *pva.Case) Caution {
 	out := []string{
-		"ages and stages (every one of the " + c.Counts + " counted has the same chances)",
+		"ages and stages (all that are counted have the same chances)",
 		"genetics and inbreeding",
 		"movement to and from other populations" + map[bool]string{true: " beyond the additions stated"}[len(c.Stocking) > 0],
 		"disease and predators as populations of their own",
@@ -154,7 +193,7 @@ func takeCaution(c *pva.Case) Caution {
 		w.Text += " The rule of " + listed(exact) + " sees the true number, without the error that every survey has."
 	}
 	if len(unsexed) > 0 && c.Counts != "animals" {
-		w.Text += " Each animal of " + listed(unsexed) + " is taken to cost one of the " + c.Counts + " counted."
+		w.Text += " Each animal of " + listed(unsexed) + " is taken to cost one counting unit (" + c.Counts + ")."
 	}
 	return w
 }
@@ -171,7 +210,7 @@ func noiseCaution(c *pva.Case) Caution {
 	if len(parts) == 0 {
 		return Caution{}
 	}
-	w := Caution{Heading: "Noise", Text: strings.Join(parts, " ")}
+	w := Caution{Heading: noiseHeading, Text: strings.Join(parts, " ")}
 	if c.Births.YearSD == 0 && c.Deaths.YearSD == 0 {
 		w.Short = "No variation between " + c.TimeUnit + "s is stated, which understates the risk."
 		w.References = []string{lande}

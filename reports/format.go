@@ -18,8 +18,50 @@ func PercentDigits(p float64, replicates int64) int {
 	return max(0, min(8, int(math.Ceil(-math.Log10(100*math.Sqrt(p*(1-p)/n))-1e-9))))
 }
 
-// Percent is a risk as percent, with as many digits as the replicates support.
-// With no replicates (an exact risk) it has three significant digits.
+// leastPercent is the smallest risk that is written in figures, in percent;
+// below it a risk is said to be below it.
+const leastPercent = 1e-6
+
+// For is the format with the decimals that one value needs: a percentage below
+// 1 keeps two significant digits, zeros at its end left off, and one just short of
+// 100 is not written as 100. Every medium writes its percentages by this rule.
+func (f Format) For(v float64) Format {
+	if f.Kind != Percents {
+		return f
+	}
+	p := math.Abs(100 * v)
+	if p == 0 || p == 100 || p < leastPercent || math.IsNaN(p) || math.IsInf(p, 0) {
+		return f
+	}
+	least := f.Digits
+	if p < 100 {
+		for f.Digits < 12 && strings.HasPrefix(strconv.FormatFloat(p, 'f', f.Digits, 64), "100") {
+			f.Digits++
+		}
+	}
+	if two := 1 - int(math.Floor(math.Log10(p))); p < 1 && two > f.Digits {
+		f.Digits = two
+		s := strconv.FormatFloat(p, 'f', two, 64)
+		for f.Digits > least && strings.HasSuffix(s, "0") {
+			s = s[:len(s)-1]
+			f.Digits--
+		}
+	}
+	return f
+}
+
+// TooSmall is the text for a percentage too small to be written in figures, ""
+// for every other value and format.
+func (f Format) TooSmall(v float64) string {
+	if f.Kind == Percents && v > 0 && 100*v < leastPercent {
+		return "<0.000001 %"
+	}
+	return ""
+}
+
+// Percent is a risk as percent, with as many digits as the replicates support
+// and two significant ones below 1 %. With no replicates (an exact risk) it has
+// three significant digits.
 func Percent(p float64, replicates int64) string { return percentBare(p, replicates) + " %" }
 
 func percentBare(p float64, replicates int64) string {
@@ -30,30 +72,33 @@ func percentBare(p float64, replicates int64) string {
 		return "0"
 	case p == 1:
 		return "100"
+	case p > 0 && 100*p < leastPercent:
+		return "<0.000001"
 	case replicates <= 0:
 		return Significant(100*p, 3)
 	}
-	return strconv.FormatFloat(100*p, 'f', PercentDigits(p, replicates), 64)
+	return percentCell(p, PercentDigits(p, replicates))
 }
 
 // PercentRange is an interval of risks as percent: "6.6 to 7.6 %".
 func PercentRange(low, high float64, replicates int64) string {
-	// Both ends with the digits of the finer one, so that they read alike.
+	// Both ends with the digits of their middle, so that they read alike.
 	digits := PercentDigits((low+high)/2, replicates)
-	f := func(p float64) string {
-		if p == 0 || p == 1 {
-			return percentBare(p, replicates)
-		}
-		return strconv.FormatFloat(100*p, 'f', digits, 64)
-	}
-	return f(low) + " to " + f(high) + " %"
+	return percentCell(low, digits) + " to " + percentCell(high, digits) + " %"
 }
 
 // PointsText is a difference of two risks in percentage points: "3.1".
 func PointsText(d float64, replicates int64) string {
-	digits := PercentDigits(math.Abs(d), replicates)
-	s := strconv.FormatFloat(100*d, 'f', digits, 64)
-	if strings.Trim(s, "-0.") == "" {
+	return pointsWith(d, PercentDigits(math.Abs(d), replicates))
+}
+
+func pointsWith(d float64, digits int) string {
+	return zeroless(strconv.FormatFloat(100*d, 'f', digits, 64))
+}
+
+// zeroless writes a number that its decimals leave nothing of as plain 0.
+func zeroless(s string) string {
+	if strings.Trim(s, "-+0.") == "" {
 		return "0"
 	}
 	return s
@@ -118,8 +163,8 @@ func (f Format) Show(v float64) string {
 	case Small:
 		return strconv.FormatFloat(v, 'e', f.Digits, 64)
 	case Points:
-		s := fixed(v, f.Digits)
-		if v > 0 && strings.Trim(s, "0.") != "" {
+		s := zeroless(fixed(v, f.Digits))
+		if v > 0 && s != "0" {
 			return "+" + s
 		}
 		return s
@@ -127,17 +172,19 @@ func (f Format) Show(v float64) string {
 	return Plain(v)
 }
 
-// percentCell keeps a small risk from being shown as none: below half of the
-// last digit it is written with one more.
+// percentCell is a fraction in percent with so many decimals, or as many more
+// as it needs.
 func percentCell(p float64, digits int) string {
-	v := 100 * p
+	f := Format{Percents, digits}
 	switch {
-	case v == 0:
+	case p == 0:
 		return "0"
-	case math.Abs(v) < 0.5*math.Pow10(-digits):
-		digits++
+	case p == 1:
+		return "100"
+	case f.TooSmall(p) != "":
+		return strings.TrimSuffix(f.TooSmall(p), " %")
 	}
-	return strconv.FormatFloat(v, 'f', digits, 64)
+	return zeroless(strconv.FormatFloat(100*p, 'f', f.For(p).Digits, 64))
 }
 
 func fixed(v float64, digits int) string {

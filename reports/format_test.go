@@ -19,6 +19,9 @@ func TestPercentDigits(t *testing.T) {
 		{0.0712, 1000000, "7.12 %"}, // 0.026 points
 		{0.0004, 10000, "0.04 %"},   // 0.02 points
 		{0.9996, 10000, "99.96 %"},  // the same
+		{0.00075, 4000, "0.075 %"},  // two significant digits at least
+		{0.0005, 4000, "0.05 %"},    // without the zero at the end
+		{5.9e-19, 0, "<0.000001 %"}, {2e-10, 10000, "<0.000001 %"},
 		{0, 10000, "0 %"}, {1, 10000, "100 %"},
 		{0.07049, 0, "7.05 %"}, {0.0000123456, 0, "0.00123 %"}, {math.NaN(), 100, "unknown %"},
 	} {
@@ -29,7 +32,7 @@ func TestPercentDigits(t *testing.T) {
 	if got := PercentRange(0.0662, 0.0762, 10000); got != "6.6 to 7.6 %" {
 		t.Errorf("range %q", got)
 	}
-	if got := PercentRange(0, 0.00038, 10000); got != "0 to 0.04 %" {
+	if got := PercentRange(0, 0.00038, 10000); got != "0 to 0.038 %" {
 		t.Errorf("range from zero %q", got)
 	}
 	for d, want := range map[float64]string{0.0312: "3.1", -0.0312: "-3.1", 0: "0"} {
@@ -61,8 +64,10 @@ func TestFormatsShow(t *testing.T) {
 	}{
 		{Format{Counts, 0}, 12345, "12,345"}, {Format{Dates, 0}, 2027, "2027"},
 		{Format{Decimal, 2}, 1234.567, "1,234.57"}, {Format{Decimal, 1}, -0.04, "0.0"}, {Format{Decimal, 1}, -12.34, "-12.3"},
-		{Format{Percents, 1}, 0.0712, "7.1 %"}, {Format{Percents, 1}, 0, "0 %"}, {Format{Percents, 1}, 0.0001, "0.01 %"}, {Format{Percents, 1}, 0.0006, "0.1 %"},
-		{Format{Points, 1}, 3.12, "+3.1"}, {Format{Points, 1}, -3.12, "-3.1"}, {Format{Points, 1}, 0, "0.0"},
+		{Format{Percents, 1}, 0.0712, "7.1 %"}, {Format{Percents, 1}, 0, "0 %"}, {Format{Percents, 1}, 0.0001, "0.01 %"}, {Format{Percents, 1}, 0.0006, "0.06 %"},
+		{Format{Percents, 1}, 0.0005, "0.05 %"}, {Format{Percents, 1}, 0.00456, "0.46 %"}, {Format{Percents, 1}, 0.99996, "99.996 %"}, {Format{Percents, 3}, 4.8e-11, "<0.000001 %"},
+		{Format{Percents, 3}, 4.8e-8, "0.0000048 %"}, {Format{Points, 3}, -0.0002, "0"}, {Format{Points, 3}, 0.0002, "0"},
+		{Format{Points, 1}, 3.12, "+3.1"}, {Format{Points, 1}, -3.12, "-3.1"}, {Format{Points, 1}, 0, "0"},
 		{Format{General, 0}, 0.125, "0.125"},
 	} {
 		if got := c.f.Show(c.v); got != c.want {

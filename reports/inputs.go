@@ -85,14 +85,25 @@ func InputsTable(c *pva.Case) *Table {
 			"source": optional(e.Source), "note": optional(e.Note), "status": text(status(e, key))}
 		if key != nil {
 			cells["unit"], cells["meaning"] = optional(unitOf(c, key)), optional(key.Doc)
-			if v := cells["value"]; key.Unit == "date" && v.Kind == NumberCell {
-				v.Format = Format{Kind: Dates}
-				cells["value"] = v
+			if v := cells["value"]; v.Kind == NumberCell {
+				cells["value"] = shownAs(v, key)
 			}
 		}
 		b.row(e.Path, cells)
 	}
 	return b.t
+}
+
+// shownAs writes dates and the seed as plain digits and a level as percent; the
+// value stays the one of the case.
+func shownAs(v Cell, key *pva.Key) Cell {
+	switch {
+	case key.Unit == "date" || key.Path == "run.seed":
+		v.Format = Format{Kind: Dates}
+	case key.Path == "question.limit" || key.Path == "question.confidence":
+		v.Format = Format{Percents, PercentDecimals(v.Num)}
+	}
+	return v
 }
 
 func optional(s string) Cell {

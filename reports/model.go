@@ -50,9 +50,9 @@ func (m *model) purpose() Section {
 func (m *model) entities() Section {
 	c := m.c
 	var s said
-	unit := "one of the " + c.Counts
+	unit := "counted in " + c.Counts
 	if c.UnitSize != 1 {
-		unit += ", standing for " + Plain(c.UnitSize) + " animals"
+		unit += ", a unit standing for " + Plain(c.UnitSize) + " animals"
 	}
 	s.say("One population, held as a whole number N of counting units (" + unit + "). There are no ages, sexes or places. One step is a " + c.TimeUnit + "; the horizon is " +
 		counted(int64(c.Question.Horizon), c.TimeUnit) + m.calendar() + ".")

@@ -27,6 +27,9 @@ func (m *model) submodels() []Section {
 	for i := range m.c.Stocking {
 		out = append(out, m.additions(i))
 	}
+	for i := range out {
+		out[i].Heading = "7." + strconv.Itoa(i+1) + " Submodel: " + strings.TrimPrefix(out[i].Heading, "7. Submodels: ")
+	}
 	return out
 }
 

@@ -77,7 +77,7 @@ func (m *model) rule(s *said, i int, seen string) {
 		s.say("The takes are " + strings.Join(takes, ", ") + " from the first scheduled " + m.c.TimeUnit + " on; the last one is held.")
 	}
 	if h.Share != 1 {
-		s.say("One animal taken costs " + Plain(h.Share) + " of the " + m.c.Counts + " counted.")
+		s.say("One animal taken costs " + Plain(h.Share) + " counting units (" + m.c.Counts + ").")
 	}
 	switch {
 	case h.TakeCV > 0:
@@ -120,7 +120,11 @@ func (m *model) stream(s *said, i int) {
 			rate = Plain(h.Share) + " * " + rate
 		}
 	}
-	s.formula("N -> N-1 at rate " + rate + "  while N > " + Plain(h.Leave) + " and N >= " + Plain(h.StopBelow))
+	stop := ""
+	if h.StopBelow > 0 {
+		stop = " and N >= " + Plain(h.StopBelow)
+	}
+	s.formula("N -> N-1 at rate " + rate + "  while N > " + Plain(h.Leave) + stop)
 	s.say("A stream of removals through the " + m.c.TimeUnit + " on the true N, one at a time.")
 	if h.ExtraDeaths > 0 {
 		s.say("Extra deaths are a second stream at " + Plain(h.ExtraDeaths) + " times that rate.")

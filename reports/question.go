@@ -33,11 +33,12 @@ func Question(c *pva.Case) string {
 		b.WriteString(Plain(c.Question.Threshold) + " or fewer " + c.Counts + " are counted in some " + c.TimeUnit + " ")
 	}
 	b.WriteString(span(c))
-	if takes := takePhrase(c); takes != "" {
-		b.WriteString(", if " + takes)
-	}
-	if adds := addPhrase(c); adds != "" {
-		b.WriteString(", with " + adds + " added")
+	takes, adds := takePhrase(c), addPhrase(c)
+	switch {
+	case takes != "" && adds != "":
+		b.WriteString(", if " + takes + ", and " + adds)
+	case takes+adds != "":
+		b.WriteString(", if " + takes + adds)
 	}
 	return b.String() + "?"
 }
@@ -57,11 +58,23 @@ func span(c *pva.Case) string {
 // dateOf is the date of one model year as text.
 func dateOf(c *pva.Case, y int) string { return Format{Kind: Dates}.Show(float64(c.Label(y))) }
 
-// takePhrase says what is taken: "8 a year are taken, on top of 5 % a year that goes on anyway".
+// takePhrase says what is taken: "8 a year are taken, on top of 5 % a year in any case".
 func takePhrase(c *pva.Case) string {
+	if len(c.Harvest) == 1 {
+		h := c.Harvest[0]
+		n := takeNoun(c, h)
+		s := n.amount + n.each + n.verb() + " taken" + n.rest
+		if h.StopBelow > 0 {
+			s += ", none below " + Plain(h.StopBelow)
+		}
+		if h.Existing {
+			s += ", as now"
+		}
+		return s
+	}
 	var permitted, existing []string
 	for i := range c.Harvest {
-		words := TakeWords(c, i, len(c.Harvest) > 1)
+		words := TakeWords(c, i, true)
 		if c.Harvest[i].Existing {
 			existing = append(existing, words)
 		} else {
@@ -70,62 +83,95 @@ func takePhrase(c *pva.Case) string {
 	}
 	switch {
 	case len(permitted) > 0 && len(existing) > 0:
-		return listed(permitted) + " are taken, on top of " + listed(existing) + " taken in any case"
+		return listed(permitted) + " are taken, on top of " + listed(existing) + " in any case"
 	case len(permitted) > 0:
-		return listed(permitted) + " are taken" + stopWords(c)
+		return listed(permitted) + " are taken"
 	case len(existing) > 0:
 		return listed(existing) + " are taken as now"
 	}
 	return ""
 }
 
-// stopWords is where the take stops, for a case with one rule; with several it
-// stands in brackets behind each.
-func stopWords(c *pva.Case) string {
-	if len(c.Harvest) == 1 && c.Harvest[0].StopBelow > 0 {
-		return ", none below " + Plain(c.Harvest[0].StopBelow)
+// amountWords are the words for a yearly amount: how many, "a year" where it is
+// every year, and the rest: how often otherwise, by what, and when.
+type amountWords struct{ amount, each, rest string }
+
+func (w amountWords) verb() string {
+	if w.amount == "1" || strings.HasPrefix(w.amount, "1 ") && !strings.Contains(w.amount, "%") && !strings.Contains(w.amount, " to ") {
+		return " is"
 	}
-	return ""
+	return " are"
 }
 
-// TakeWords is take rule i as a noun phrase: "8 a year from 2027 to 2056"; where
-// it is named, its name and where it stops follow in brackets.
-func TakeWords(c *pva.Case, i int, named bool) string {
-	h := c.Harvest[i]
-	each := " a " + c.TimeUnit
-	if h.OneYearIn > 1 {
-		each = " one " + c.TimeUnit + " in " + Grouped(int64(h.OneYearIn))
+// often splits how often into "a year", said with the amount, and all else.
+func often(c *pva.Case, s pva.Schedule) (each, rest string) {
+	ordinals := []string{"second", "third", "fourth", "fifth", "sixth", "seventh", "eighth", "ninth", "tenth"}
+	switch n := s.OneYearIn; {
+	case n <= 1:
+		each = " a " + c.TimeUnit
+	case n-2 < len(ordinals):
+		rest = " every " + ordinals[n-2] + " " + c.TimeUnit
+	default:
+		rest = " one " + c.TimeUnit + " in " + Grouped(int64(n))
 	}
-	var s string
+	return each, rest
+}
+
+func takeNoun(c *pva.Case, h pva.Harvest) amountWords {
+	var w amountWords
+	w.each, w.rest = often(c, h.Schedule)
+	// With a share other than 1 what is taken is not what is counted.
+	what := func(n string) string {
+		switch {
+		case h.Share == 1:
+			return n
+		case n == "1":
+			return n + " animal"
+		}
+		return n + " animals"
+	}
 	switch h.Rule {
 	case "constant":
-		s = Plain(h.Take.Value) + each
+		w.amount = what(Plain(h.Take.Value))
 		if h.Take.Value == 0 {
-			s = "none"
+			w.amount, w.each = "none", ""
 		}
 	case "fraction":
+		w.amount = percentOf(h.Fraction.Value)
 		if h.Rate.Set {
-			s = Plain(h.Rate.Value) + " per head" + each
-		} else {
-			s = percentOf(h.Fraction.Value) + each
+			w.amount = Plain(h.Rate.Value) + " per head"
 		}
 	case "above":
-		s = "all above " + Plain(h.Spare.Value) + each
+		w.amount = "all above " + Plain(h.Spare.Value)
 		if f := h.Fraction.Or(1); f != 1 {
-			s = percentOf(f) + " of those above " + Plain(h.Spare.Value) + each
+			w.amount = percentOf(f) + " of those above " + Plain(h.Spare.Value)
+		}
+		if w.each != "" { // "100 a year" would be read together
+			w.each, w.rest = "", " every "+c.TimeUnit
 		}
 	case "ladder":
 		takes := make([]float64, len(h.Points))
 		for j, p := range h.Points {
 			takes[j] = p[1]
 		}
-		s = between(takes) + each + " depending on the number seen"
+		w.amount = what(between(takes))
+		w.rest += " depending on the number seen"
 	case "by_year":
-		s = between(h.Takes) + each + " by a list"
+		w.amount = what(between(h.Takes))
+		w.rest += " by a list"
 	}
-	if w := yearsWords(c, h.Schedule); w != "" {
-		s += " " + w
+	if y := yearsWords(c, h.Schedule); y != "" {
+		w.rest += " " + y
 	}
+	return w
+}
+
+// TakeWords is take rule i as a noun phrase: "8 a year from 2027 to 2056"; where
+// it is named, its name and where it stops follow in brackets.
+func TakeWords(c *pva.Case, i int, named bool) string {
+	h := c.Harvest[i]
+	w := takeNoun(c, h)
+	s := w.amount + w.each + w.rest
 	if !named {
 		return s
 	}
@@ -159,7 +205,7 @@ func yearsWords(c *pva.Case, s pva.Schedule) string {
 	case y.From == y.To:
 		return "in " + word + f(y.From)
 	default:
-		return "from " + word + f(y.From) + " to " + f(y.To)
+		return "from " + word + f(y.From) + " to " + word + f(y.To)
 	}
 }
 
@@ -179,26 +225,32 @@ func between(v []float64) string {
 
 func percentOf(f float64) string { return Significant(100*f, 6) + " %" }
 
+// addPhrase says what is added: "2 a year are added, and 15 every second year
+// while fewer than 40 stand".
 func addPhrase(c *pva.Case) string {
 	var adds []string
 	for _, s := range c.Stocking {
 		if s.Add == 0 {
 			continue
 		}
-		each := " a " + c.TimeUnit
-		if s.OneYearIn > 1 {
-			each = " one " + c.TimeUnit + " in " + Grouped(int64(s.OneYearIn))
-		}
-		w := Plain(s.Add) + each
+		w := amountWords{amount: Plain(s.Add)}
+		w.each, w.rest = often(c, s.Schedule)
 		if y := yearsWords(c, s.Schedule); y != "" {
-			w += " " + y
+			w.rest += " " + y
 		}
 		if s.OnlyBelow.Set {
-			w += " while below " + Plain(s.OnlyBelow.Value)
+			w.rest += " while fewer than " + Plain(s.OnlyBelow.Value) + " stand"
 		}
-		adds = append(adds, w)
+		verb := ""
+		if len(adds) == 0 {
+			verb = w.verb() + " added"
+		}
+		adds = append(adds, w.amount+w.each+verb+w.rest)
 	}
-	return listed(adds)
+	if len(adds) < 2 {
+		return strings.Join(adds, "")
+	}
+	return strings.Join(adds[:len(adds)-1], ", ") + ", and " + adds[len(adds)-1]
 }
 
 // fallenTo is what falling means, for titles: "20 or fewer", or "none".

@@ -142,6 +142,10 @@ func Build(a *pva.Assessment, meta Meta) *Report {
 	r.VerdictText = verdictText(a)
 	r.carryUncertainty(a)
 	r.ShortCautions, r.Cautions = Cautions(c)
+	r.ShortCautions = Unsaid(r.ShortCautions, a.Warnings)
+	if exactAnswer(a.Exact) != nil {
+		besideExact(r.ShortCautions)
+	}
 	for _, w := range a.Warnings {
 		r.Warnings = append(r.Warnings, w.String())
 	}

@@ -7,9 +7,9 @@ import (
 	"strings"
 )
 
-// longestLine is how many characters of a line of the case stand in one cell: a
-// spreadsheet's cell holds 32,767.
-const longestLine = 32000
+// longestLine is how many characters of a line of the case stand in one cell: as
+// many as a row of the greatest height shows. A cell would hold 32,767.
+const longestLine = 2400
 
 // CaseLines is the case text as it is kept in a report: its lines without their
 // ends. CaseSum is the SHA-256 of the lines joined by line feeds.

@@ -124,7 +124,7 @@ func overDraws(a *pva.Assessment) *Table {
 	if a.Case.Question.Limit.Set {
 		b.column("within", "Draws within the limit", "", share).column("within_low", "Low", "", share).column("within_high", "High", "", share)
 	}
-	b.column("total", "Variance of the shares fallen", "", Format{Kind: General}).column("inputs", "of it from the inputs", "", share).column("noise", "replicate noise", "", share)
+	b.column("total", "Variance of the shares fallen", "", Format{Kind: Small, Digits: 2}).column("inputs", "of it from the inputs", "", share).column("noise", "replicate noise", "", share)
 	row := func(id, name string, r *pva.DrawnRisk) {
 		cells := map[string]Cell{"name": text(name), "pooled": num(r.Pooled.Estimate), "low": num(r.Pooled.Low), "high": num(r.Pooled.High)}
 		if id == "case" && u.Draws <= mostDrawsShown {
@@ -176,7 +176,7 @@ func uncertainTable(u *pva.Uncertainty) *Table {
 		column("redrawn", "Drawn anew", "draws", Format{Kind: Counts}).wide("law", "Law")
 	for i, in := range byLink(u) {
 		b.row("input_"+yearID(i+1), map[string]Cell{"key": text(in.Key), "link": num(in.Link.Estimate), "low": num(in.Link.Low), "high": num(in.Link.High),
-			"value": num(in.Value), "mean": num(in.Mean), "sd": num(in.SD), "redrawn": num(float64(in.Outside)), "law": text(in.Law)})
+			"value": num(in.Value), "mean": fourDigits(in.Mean), "sd": fourDigits(in.SD), "redrawn": num(float64(in.Outside)), "law": text(in.Law)})
 	}
 	b.t.Note = "From -1 to 1: how regularly the risk rises (above 0) or falls (below 0) with the input while the others are held. 0 is no regular link."
 	return b.t
@@ -285,4 +285,13 @@ func drawsTable(u *pva.Uncertainty) *Table {
 		b.row("draw_"+yearID(d+1), cells)
 	}
 	return b.t
+}
+
+// fourDigits is a number shown to four significant digits; the cell holds all.
+func fourDigits(v float64) Cell {
+	c := num(v)
+	if v != 0 && !math.IsNaN(v) && !math.IsInf(v, 0) {
+		c = c.as(Decimal, max(0, 3-int(math.Floor(math.Log10(math.Abs(v))))))
+	}
+	return c
 }

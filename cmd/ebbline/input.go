@@ -155,6 +155,11 @@ func reportPath(out, caseName string) string {
 
 // sameFile says whether two names are one file.
 func sameFile(a, b string) bool {
+	if p, err := filepath.Abs(a); err == nil {
+		if q, err := filepath.Abs(b); err == nil && p == q {
+			return true // also where neither is there yet
+		}
+	}
 	x, err := os.Stat(a)
 	if err != nil {
 		return false

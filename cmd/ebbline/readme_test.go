@@ -38,11 +38,8 @@ func TestReadmeIsTrue(t *testing.T) {
 			t.Errorf("the README shows another output of ebbline %s (go test ./cmd/ebbline -run Readme -update mends it); now:\n%s", f[1], out.String())
 			continue
 		}
-		text = bytes.Replace(text, f[2], out.Bytes(), 1)
-		if len(f[2]) == 0 {
-			head := "ebbline " + string(f[1]) + " -->\n```text\n"
-			text = bytes.Replace(text, []byte(head), []byte(head+out.String()), 1)
-		}
+		head := "ebbline " + string(f[1]) + " -->\n```text\n"
+		text = bytes.Replace(text, append([]byte(head), f[2]...), []byte(head+out.String()), 1)
 		if err := os.WriteFile(path, text, 0o666); err != nil {
 			t.Fatal(err)
 		}

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"strings"
+	"unicode/utf8"
 
 	"ebbline/pva"
 	"ebbline/pva/rates"
@@ -47,11 +48,7 @@ func inputs(c *pva.Case) string {
 	var rows [][]string
 	table := ""
 	flush := func() {
-		for _, line := range strings.Split(strings.TrimRight(columns(rows, "    "), "\n"), "\n") {
-			if line != "" {
-				out.WriteString(shorten(line, Width) + "\n")
-			}
-		}
+		out.WriteString(hung(rows, "    "))
 		rows = nil
 	}
 	for i, row := range t.Rows {
@@ -69,8 +66,8 @@ func inputs(c *pva.Case) string {
 			table = top
 		}
 		v := t.Shown(i, value)
-		if u := t.Shown(i, unit); u != "" {
-			v += " " + u
+		if u := t.Shown(i, unit); u != "" && !strings.HasSuffix(v, "%") {
+			v += " " + oneOf(v, u)
 		}
 		note := t.Shown(i, status)
 		if s := t.Shown(i, source); s != "" && s != reports.Assumed {
@@ -118,12 +115,18 @@ func growth(c *pva.Case, m *rates.Model) string {
 		flow := c.Births.Breeding == "flow"
 		rows = append(rows, []string{reports.Plain(n), mark(g.Pulse, !flow), mark(g.Flow, flow), note})
 	}
-	add(math.Max(1, math.Ceil(c.Question.Threshold)), "the threshold")
+	low := "the threshold"
+	if c.Question.Threshold < 1 {
+		low = "one left"
+	}
+	add(math.Max(1, math.Ceil(c.Question.Threshold)), low)
 	add(c.Start.Abundance, "the start")
 	return columns(rows, "  ", true, true, true) + "  * the reading in force; a rate meant for the other reading shows here\n"
 }
 
 func rests(c *pva.Case, m *rates.Model) string {
+	const mean = "(of a mean path: no weather, no catastrophes, and rules of one year in several averaged over the years)"
+	note := wrap(strings.ReplaceAll(mean, "year", c.TimeUnit), "  ", 0)
 	list := m.Equilibria()
 	if len(list) == 0 {
 		n := m.MeanYear(c.Start.Abundance)
@@ -131,7 +134,7 @@ func rests(c *pva.Case, m *rates.Model) string {
 		if n > c.Start.Abundance {
 			way = "grows"
 		}
-		return "  nowhere above 0: from the start it " + way + "\n"
+		return "  nowhere above 0: from the start it " + way + "\n" + note
 	}
 	var out strings.Builder
 	for _, e := range list {
@@ -141,7 +144,7 @@ func rests(c *pva.Case, m *rates.Model) string {
 		}
 		out.WriteString("  " + reports.Significant(e.N, 4) + "  " + kind + "\n")
 	}
-	return out.String()
+	return out.String() + note
 }
 
 // substeps says how a flow year is simulated.
@@ -157,5 +160,71 @@ func substeps(m *rates.Model) string {
 	if b.EventsBelow > 0 {
 		s += " while the population is above " + reports.Plain(b.EventsBelow) + ", and event by event below"
 	}
-	return s + fmt.Sprintf("; that can shift no probability by more than about %.2g.", b.RiskBound)
+	return s + "; " + boundWords(b.RiskBound) + "."
+}
+
+// boundWords say what a bound on the shift of a probability is worth.
+func boundWords(bound float64) string {
+	switch {
+	case bound < 0.0001:
+		return "that shifts any probability by less than 0.0001"
+	case bound >= 0.5 || math.IsNaN(bound):
+		return "how far that shifts a probability is not bounded: what can be shown allows for half or more"
+	}
+	return fmt.Sprintf("that shifts no probability by more than about %.2g", bound)
+}
+
+// oneOf is a unit as it stands after a number: singular after 1. Only the words
+// of this program are known in the singular, not those that a case counts in.
+func oneOf(number, unit string) string {
+	if number != "1" {
+		return unit
+	}
+	word, rest, _ := strings.Cut(unit, " ")
+	switch word {
+	case "animals", "heads", "years", "units", "replicates", "draws", "deaths", "months", "days", "weeks", "seasons":
+		word = strings.TrimSuffix(word, "s")
+	}
+	return strings.TrimSpace(word + " " + rest)
+}
+
+// hung lays rows out in columns, the last of which goes on below itself where
+// it is too long for the line.
+func hung(rows [][]string, indent string) string {
+	if len(rows) == 0 {
+		return ""
+	}
+	last := len(rows[0]) - 1
+	at := utf8.RuneCountInString(indent)
+	for j := range last {
+		w := 0
+		for _, r := range rows {
+			w = max(w, utf8.RuneCountInString(r[j]))
+		}
+		at += w + 2
+	}
+	if Width-at < 16 { // no room beside: below, set in
+		var out strings.Builder
+		short := make([][]string, len(rows))
+		for i, r := range rows {
+			short[i] = r[:last]
+		}
+		lines := strings.SplitAfter(columns(short, indent), "\n")
+		for i, r := range rows {
+			out.WriteString(lines[i] + wrap(r[last], indent+"    ", 0))
+		}
+		return out.String()
+	}
+	var flat [][]string
+	for _, r := range rows {
+		for i, line := range strings.Split(strings.TrimRight(wrapTo(r[last], Width-at), "\n"), "\n") {
+			row := make([]string, last+1)
+			if i == 0 {
+				copy(row, r)
+			}
+			row[last] = line
+			flat = append(flat, row)
+		}
+	}
+	return columns(flat, indent)
 }

@@ -16,10 +16,17 @@ const answerTotal = 39 + 5*13 + 62
 
 // Sizes of charts: two stand side by side on the answer.
 const (
-	chartRows        = 18 // rows of a chart, at the height rows have by default
+	chartRows        = 17 // rows of a chart, at the height rows have by default
 	chartWidth       = 640
-	chartHeight      = 340
+	chartHeight      = 320
 	answerChartWidth = 585
+	// On the first page the charts fill what the page has left; on the second
+	// they leave room for the text under them.
+	firstChartRows, firstChartHeight = 20, 385
+	laterChartRows, laterChartHeight = 13, 250
+	// The text under the charts takes all columns but the last, which holds the
+	// list of sheets.
+	answerText = answerTotal - 62
 )
 
 // Rows of the answer above its tables.
@@ -43,12 +50,12 @@ func (b *book) placeAnswer(p reports.Part) layout {
 		row += len(t.Rows) + 3
 		if i == 0 {
 			l.chartAt = row - 1
-			row += chartRows
+			row += firstChartRows
 		}
 	}
 	l.textAt = row
 	if len(p.Charts) > 2 {
-		l.textAt += (len(p.Charts) - 1) / 2 * (chartRows + 1)
+		l.textAt += (len(p.Charts) - 1) / 2 * (laterChartRows + 1)
 	}
 	l.last = l.textAt
 	return l
@@ -74,11 +81,12 @@ func (b *book) writeAnswer(p reports.Part, l layout) {
 		if i%2 == 1 {
 			column = 6
 		}
-		row := l.chartAt
+		row, height := l.chartAt, uint(firstChartHeight)
 		if i > 1 {
-			row = l.tables["numbers"] + len(b.places["numbers"].t.Rows) + 2 + (i-2)/2*(chartRows+1)
+			height = laterChartHeight
+			row = l.tables["numbers"] + len(b.places["numbers"].t.Rows) + 2 + (i-2)/2*(laterChartRows+1)
 		}
-		b.chart(c, sheet, cellName(column, row), answerChartWidth, chartHeight)
+		b.chart(c, sheet, cellName(column, row), answerChartWidth, height)
 	}
 	last := b.answerText(sheet, l.textAt)
 	b.page(sheet, "$A$1:"+absolute(sheet, sheet, len(answerWidths), last, 0), 0)
@@ -87,18 +95,37 @@ func (b *book) writeAnswer(p reports.Part, l layout) {
 	b.try(b.f.SetSheetView(sheet, 0, &excelize.ViewOptions{ShowGridLines: &no}))
 }
 
+// sheetList writes the list of sheets in the last column from a row on, but not
+// into gaps, and gives the row after it.
+func (b *book) sheetList(sheet string, row int, gaps map[int]bool) int {
+	column := len(answerWidths)
+	b.say(sheet, cellName(column, row), "In this workbook", styleKey{bold: true, size: 11, colour: blue, indent: 2})
+	for _, p := range b.r.Parts[1:] {
+		for row++; gaps[row]; row++ {
+		}
+		b.say(sheet, cellName(column, row), p.Name, styleKey{link: true, indent: 2})
+		b.link(sheet, cellName(column, row), p.Name, "A1", "Go to "+p.Name)
+	}
+	return row + 1
+}
+
 // across writes a sentence over all columns of the answer.
 func (b *book) across(sheet string, row int, s string, k styleKey) {
+	b.over(sheet, row, len(answerWidths), answerTotal, s, k)
+}
+
+// over writes a sentence over the first columns, which are so wide together.
+func (b *book) over(sheet string, row, columns int, total float64, s string, k styleKey) {
 	k.wrap = true
 	b.say(sheet, cellName(1, row), s, k)
-	last := cellName(len(answerWidths), row)
+	last := cellName(columns, row)
 	b.try(b.f.MergeCell(sheet, cellName(1, row), last))
 	b.try(b.f.SetCellStyle(sheet, cellName(1, row), last, b.style(k)))
 	size := k.size
 	if size == 0 {
 		size = 10
 	}
-	n := lines(s, answerTotal*0.95*10/size)
+	n := lines(s, total*0.95*10/size)
 	b.try(b.f.SetRowHeight(sheet, row, float64(n)*lineHeight*size/10+3))
 }
 
@@ -116,12 +143,22 @@ func (b *book) answerHead(sheet string) {
 	b.across(sheet, rowWho, strings.Join(who, "  |  "), styleKey{colour: grey})
 	b.across(sheet, rowQuestion, r.Question, styleKey{size: 13, middle: true})
 
+	// The large figure is the one that the verdict uses.
 	risk := r.Figures[0]
 	figures := b.places["figures"]
-	b.put(sheet, cellName(1, rowBig), figures.t.Cell("risk", "estimate"),
-		b.style(styleKey{bold: true, size: 34, colour: blue, middle: true, format: numberFormat(figures.t.FormatOf(figures.t.Row("risk"), figures.t.Column("estimate")))}))
-	b.formula(sheet, cellName(1, rowBig), b.fixed(sheet, "{figures:risk:estimate}"))
-	b.say(sheet, cellName(2, rowBig), risk.Interval+"   "+risk.Note, styleKey{size: 13, middle: true})
+	lead := "risk"
+	if figures.t.Row("exact") >= 0 {
+		lead = "exact"
+	}
+	cell := figures.t.Cell(lead, "estimate")
+	b.put(sheet, cellName(1, rowBig), cell,
+		b.style(styleKey{bold: true, size: 34, colour: blue, middle: true, format: numberFormat(figures.t.FormatOf(figures.t.Row(lead), figures.t.Column("estimate")), cell.Num)}))
+	b.formula(sheet, cellName(1, rowBig), b.fixed(sheet, "{figures:"+lead+":estimate}"))
+	beside := risk.Beside
+	if beside == "" {
+		beside = risk.Interval
+	}
+	b.say(sheet, cellName(2, rowBig), beside+"   "+risk.Note, styleKey{size: 13, middle: true})
 	b.try(b.f.SetRowHeight(sheet, rowBig, 48))
 	b.try(b.f.SetRowHeight(sheet, rowQuestion, b.heightOf(r.Question, 13)+10))
 	if r.VerdictText != "" {
@@ -165,7 +202,7 @@ func (b *book) answerTable(q place, t *reports.Table, i int) {
 			if c.Key == "estimate" || c.Key == "label" {
 				k := styleKey{line: true, bold: true, right: c.Key == "estimate"}
 				if c.Key == "estimate" {
-					k.format = numberFormat(t.FormatOf(row, j))
+					k.format = numberFormat(t.FormatOf(row, j), t.Rows[row].Cells[j].Num)
 				}
 				b.try(b.f.SetCellStyle(q.sheet, q.at(row, j), q.at(row, j), b.style(k)))
 			}
@@ -179,9 +216,11 @@ func (b *book) answerTable(q place, t *reports.Table, i int) {
 	}
 }
 
-// answerText writes what stands under the charts and gives the last row.
+// answerText writes what stands under the charts, the list of sheets beside it,
+// and gives the last row.
 func (b *book) answerText(sheet string, row int) int {
 	r := b.r
+	first, gaps := row, map[int]bool{}
 	head := func(s, part string) {
 		b.say(sheet, cellName(1, row), s, styleKey{bold: true, size: 11, colour: blue})
 		if part != "" {
@@ -192,7 +231,12 @@ func (b *book) answerText(sheet string, row int) int {
 		row++
 	}
 	line := func(s string) {
-		b.across(sheet, row, s, styleKey{})
+		b.over(sheet, row, len(answerWidths)-1, answerText, s, styleKey{})
+		row++
+	}
+	gap := func() { // half a line
+		b.try(b.f.SetRowHeight(sheet, row, 7))
+		gaps[row] = true
 		row++
 	}
 	head("What it rests on", reports.PartInputs)
@@ -203,31 +247,19 @@ func (b *book) answerText(sheet string, row int) int {
 	if n := len(r.Provenance.Unsourced); n > 0 {
 		line("Without a source: " + strings.Join(r.Provenance.Unsourced, ", ") + ".")
 	}
-	row++
+	gap()
 	if len(r.Warnings) > 0 {
 		head("Warnings", reports.PartCautions)
 		for _, w := range r.Warnings {
 			line("\u26a0  " + w)
 		}
-		row++
+		gap()
 	}
 	head("Bear in mind", reports.PartCautions)
 	for _, c := range r.ShortCautions {
 		line("\u2022  " + c.Short)
 	}
-	row++
-	head("In this workbook", "")
-	for _, p := range r.Parts[1:] {
-		b.say(sheet, cellName(1, row), p.Name, styleKey{link: true})
-		b.link(sheet, cellName(1, row), p.Name, "A1", "Go to "+p.Name)
-		lead := p.Lead
-		if i := strings.Index(lead, ". "); i > 0 {
-			lead = lead[:i+1]
-		}
-		b.say(sheet, cellName(2, row), lead, styleKey{colour: grey})
-		row++
-	}
-	row++
+	row = max(row, b.sheetList(sheet, first, gaps)) + 1
 	b.say(sheet, cellName(1, row), "Seed "+seedText(r)+", "+r.Digest, styleKey{colour: grey, size: 9})
 	return row
 }

@@ -138,7 +138,7 @@ func (b *book) helper(p place, name string, cell func(i int) (reports.Cell, stri
 			continue
 		}
 		at := cellName(column, p.head+1+i)
-		b.put(p.sheet, at, c, b.style(styleKey{colour: grey, right: true, format: numberFormat(c.Format)}))
+		b.put(p.sheet, at, c, b.style(styleKey{colour: grey, right: true, format: numberFormat(c.Format, c.Num)}))
 		if f != "" && c.Kind != reports.Empty {
 			b.formula(p.sheet, at, f)
 		}

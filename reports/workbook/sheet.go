@@ -18,7 +18,11 @@ const (
 	leastWidth    = 9.5
 	mostWidth     = 36.0
 	sentenceWidth = 64
-	besideColumns = 11 // columns that a chart beside a table takes
+	// Sheets of more columns than manyColumns have narrower ones.
+	manyColumns    = 10
+	leastOfMany    = 7.5
+	sentenceOfMany = 38.0
+	besideColumns  = 11 // columns that a chart beside a table takes
 )
 
 // put writes one cell of a report: numbers with all their digits, text as text.
@@ -97,7 +101,7 @@ func (b *book) table(p place, widths []float64) {
 		tall := 1
 		for j, cell := range r.Cells {
 			column := p.t.Columns[j]
-			k := styleKey{format: numberFormat(p.t.FormatOf(i, j)), right: cell.Kind == reports.NumberCell && column.Key != "value", line: true}
+			k := styleKey{format: numberFormat(p.t.FormatOf(i, j), cell.Num), right: cell.Kind == reports.NumberCell && column.Key != "value", line: true}
 			if cell.Kind != reports.NumberCell {
 				k.format = ""
 				k.right = numeric(column) && column.Key != "value"
@@ -110,7 +114,11 @@ func (b *book) table(p place, widths []float64) {
 				k.indent = 1 // room between a number and the text after it
 			}
 			if cell.Kind == reports.TextCell {
-				tall = max(tall, lines(cell.Text, widths[p.left+j-1]-2))
+				n := lines(cell.Text, widths[p.left+j-1]-2)
+				if p.t.ID == "case_text" {
+					n = monoLines(cell.Text, widths[p.left+j-1]-4)
+				}
+				tall = max(tall, n)
 			}
 			if p.t.ID == "case_text" {
 				k.line, k.mono, k.right = false, column.Key == "text", false
@@ -139,17 +147,21 @@ func tint(key, text string) string { return tints[key][text] }
 // columnWidths makes every column of a sheet as wide as its tables need.
 func columnWidths(p reports.Part, l layout) []float64 {
 	w := make([]float64, max(l.columns, 1))
+	least, sentences := leastWidth, float64(sentenceWidth)
+	if l.columns > manyColumns { // or the print would be tiny
+		least, sentences = leastOfMany, sentenceOfMany
+	}
 	for i := range w {
-		w[i] = leastWidth
+		w[i] = least
 	}
 	for _, t := range p.Tables {
 		for j, c := range t.Columns {
 			if c.Wide {
-				w[j] = math.Max(w[j], wideColumn(t, j))
+				w[j] = math.Max(w[j], math.Min(wideColumn(t, j), math.Max(sentences, 104*caseColumn(t))))
 				continue
 			}
 			for _, word := range splitWords(headText(c)) {
-				w[j] = math.Max(w[j], wide(word)*1.12+1.5)
+				w[j] = math.Max(w[j], wide(word)*1.1+1.2)
 			}
 			most := mostWidth
 			if numeric(c) {
@@ -157,6 +169,9 @@ func columnWidths(p reports.Part, l layout) []float64 {
 			}
 			for i := range t.Rows {
 				limit := most
+				if c.Key == "name" && l.columns > manyColumns {
+					limit = 24
+				}
 				if t.Rows[i].Cells[j].Kind == reports.TextCell && numeric(c) && c.Key != "value" {
 					limit = 15
 				}
@@ -194,6 +209,14 @@ func splitWords(s string) []string {
 		}
 	}
 	return out
+}
+
+// caseColumn is 1 for the tables that hold the case itself, else 0.
+func caseColumn(t *reports.Table) float64 {
+	if t.ID == "case_text" || t.ID == "rerun" || t.ID == "inputs" {
+		return 1
+	}
+	return 0
 }
 
 // writePart writes any part but the answer.
@@ -237,12 +260,30 @@ func (b *book) writePart(p reports.Part, l layout) {
 		}
 		b.chart(c, sheet, at, chartWidth, chartHeight)
 	}
-	last := b.sections(p.Sections, sheet, l.textAt, total, len(widths))
+	last, blocks := b.sections(p.Sections, sheet, l.textAt, total, len(widths))
 	last = max(last, l.last)
 	if len(p.Charts) > 0 && !beside {
 		last = max(last, l.chartAt+chartRows)
 	}
 	b.page(sheet, absolute(sheet, sheet, 1, 1, 0)+":"+absolute(sheet, sheet, b.printColumns(p, across), last, 0), title)
+	for i, t := range p.Tables {
+		head := l.tables[t.ID]
+		first := head
+		for _, s := range []string{t.Title, t.Note} {
+			if s != "" {
+				first--
+			}
+		}
+		if i > 0 {
+			blocks = append(blocks, block{first, head + min(2, len(t.Rows))})
+		}
+	}
+	for i := range p.Charts {
+		if at := l.chartAt + i*(chartRows+1); !beside {
+			blocks = append(blocks, block{at, at + chartRows - 2}) // without the gap below
+		}
+	}
+	b.breakBefore(sheet, blocks, last, span, title)
 	no := false
 	if len(p.Tables) == 0 {
 		b.try(b.f.SetSheetView(sheet, 0, &excelize.ViewOptions{ShowGridLines: &no}))
@@ -289,18 +330,20 @@ func (b *book) freeze(sheet string, head int, firstColumn bool) {
 }
 
 // sections writes headings and paragraphs down the first columns and gives the
-// last row used. Beside tables a paragraph runs over the columns of the widest.
-func (b *book) sections(list []reports.Section, sheet string, row int, total float64, columns int) int {
+// last row used and the headings with their first paragraphs. Beside tables a paragraph runs over the columns of the widest.
+func (b *book) sections(list []reports.Section, sheet string, row int, total float64, columns int) (int, []block) {
+	var blocks []block
 	for _, s := range list {
 		b.say(sheet, cellName(1, row), s.Heading, styleKey{bold: true, size: 11, colour: blue})
 		b.try(b.f.SetRowHeight(sheet, row, 20))
+		blocks = append(blocks, block{row, row + min(2, len(s.Paragraphs))})
 		row++
 		for _, p := range s.Paragraphs {
 			row = b.paragraph(p, sheet, row, total, columns)
 		}
 		row++
 	}
-	return row - 1
+	return row - 1, blocks
 }
 
 func (b *book) paragraph(p reports.Paragraph, sheet string, row int, total float64, columns int) int {

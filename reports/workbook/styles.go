@@ -91,9 +91,13 @@ func (b *book) style(k styleKey) int {
 	return id
 }
 
-// numberFormat is a report's format as spreadsheets write it; numbers in it look
-// as reports.Format.Show writes them.
-func numberFormat(f reports.Format) string {
+// numberFormat is a report's format as spreadsheets write it for a value; the
+// value looks in it as reports.Format.Show writes it.
+func numberFormat(f reports.Format, v float64) string {
+	if s := f.TooSmall(v); s != "" {
+		return `"` + s + `"`
+	}
+	f = f.For(v)
 	decimals := func(n int) string {
 		if n == 0 {
 			return "0"
@@ -108,14 +112,14 @@ func numberFormat(f reports.Format) string {
 	case reports.Decimal:
 		return "#,##" + decimals(f.Digits)
 	case reports.Percents:
-		// A small risk is not shown as none.
-		small := "0." + strings.Repeat("0", f.Digits+2) + "5"
-		return `[=0]0\ %;[<` + small + `]` + decimals(f.Digits+1) + `\ %;` + decimals(f.Digits) + `\ %`
+		return `[=0]0\ %;[=1]0\ %;` + decimals(f.Digits) + `\ %`
 	case reports.Small:
 		return decimals(f.Digits) + "E+00"
 	case reports.Points:
 		d := decimals(f.Digits)
-		return "+" + d + ";-" + d + ";" + d
+		// What rounds to nothing is 0, without a sign.
+		least := "0." + strings.Repeat("0", f.Digits) + "5"
+		return "[>=" + least + "]+" + d + ";[<=-" + least + "]-" + d + ";0"
 	}
 	return "General"
 }

@@ -101,6 +101,40 @@ func headerText(s string) string {
 // quoted is a sheet's name as formulas write it.
 func quoted(sheet string) string { return "'" + strings.ReplaceAll(sheet, "'", "''") + "'" }
 
+// spaceWidth is the width of a space in widths of a digit.
+const spaceWidth = 0.52
+
+// monoLines is how many lines a text in a typewriter face takes in a column so
+// many digits of the text face wide. Such a face has one width, 0.6 of the size,
+// and the face of the columns 0.556.
+func monoLines(s string, width float64) int {
+	per := max(1, int(width*0.556/0.6))
+	n, at := 1, 0
+	for i, word := range strings.Split(s, " ") {
+		w := 0
+		for _, r := range word {
+			w++
+			if r > 0x2e80 {
+				w++
+			}
+		}
+		switch {
+		case i > 0 && at+1+w > per:
+			n++
+			at = w
+		case i > 0:
+			at += 1 + w
+		default:
+			at = w
+		}
+		if at > per {
+			n += (at - 1) / per
+			at = (at-1)%per + 1
+		}
+	}
+	return n
+}
+
 // lines is how many lines a text takes in a column so many characters wide,
 // counted word by word as a spreadsheet wraps it.
 func lines(s string, width float64) int {
@@ -113,11 +147,11 @@ func lines(s string, width float64) int {
 			switch {
 			case at == 0:
 				at = w
-			case at+0.55+w > width:
+			case at+spaceWidth+w > width:
 				n++
 				at = w
 			default:
-				at += 0.55 + w
+				at += spaceWidth + w
 			}
 			if at > width {
 				n += int(math.Ceil(at/width)) - 1
