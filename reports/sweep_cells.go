@@ -128,6 +128,7 @@ func mapTable(s *sweep.Result) *Table {
 		}
 		b.row("row_"+yearID(i+1), cells)
 	}
+	b.t.Shaded = true
 	return b.t
 }
 

@@ -15,6 +15,9 @@ type Table struct {
 	Rows    []Row
 	// Main marks the table whose heading stays in view while its rows scroll.
 	Main bool
+	// Shaded tables are maps: the larger the number the darker its cell, the
+	// first column left out. The numbers stand in the cells all the same.
+	Shaded bool
 }
 
 // Column is one column of a table.

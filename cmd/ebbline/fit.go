@@ -30,29 +30,32 @@ type fitInput struct {
 func newFit(a *app) *cobra.Command {
 	in := &fitInput{}
 	cmd := &cobra.Command{
-		Use:   "fit COUNTS.csv",
+		Use:   "fit COUNTS",
 		Short: "Estimate growth, its variance and crowding from a series of counts",
-		Long: `Reads a series of counts (CSV with a header: year and count; optionally se or
-cv, the error of each count, and effort; years may be missing) and fits growth
-with drift, three curves of crowding, and the split of process from observation
-error, each with its interval; states the risk that the drift model puts on a
-fall, unless the counts do not carry one, and why.
+		Long: `Reads a series of counts (CSV, or the sheet Counts or first sheet of an .xlsx
+workbook, with a header: year and count; optionally se or cv, the error of each
+count, effort, and note; years may be missing) and fits growth with drift, three
+curves of crowding, and the split of process from observation error, each with
+its interval; states the risk that the drift model puts on a fall, unless the
+counts do not carry one, and why.
 
-With --write it makes a case from the fit. Counts alone cannot tell births from
-deaths: the case needs --breeding and --survival (or --generation).`,
+With --write it makes a case from the fit, ready for assess. Counts alone cannot
+tell births from deaths: the case needs --survival (or --generation). Births are
+taken to come once a year unless --breeding says otherwise.`,
 		Example: `  ebbline fit counts.csv --threshold 20 --horizon 30
-  ebbline fit counts.csv --write mycase.toml --breeding pulse --survival 0.8`,
+  ebbline fit counts.csv --write mycase.toml --survival 0.8
+  ebbline assess mycase.toml`,
 		Args: cobra.ExactArgs(1),
 		RunE: func(_ *cobra.Command, args []string) error { return in.run(a, args[0]) },
 	}
 	f := cmd.Flags()
 	in.flags = f
 	f.StringVar(&in.write, "write", "", "write a case made from the fit to `CASE.toml`")
-	f.StringVar(&in.make.Breeding, "breeding", "", "births once a year or all through it: `pulse or flow` (for --write)")
+	f.StringVar(&in.make.Breeding, "breeding", "", "births once a year or all through it: `pulse or flow` (for --write; default: pulse, told as assumed)")
 	f.Float64Var(&in.make.Survival, "survival", 0, "mean `SHARE` of the counted animals that survive a year (for --write)")
 	f.Float64Var(&in.make.Generation, "generation", 0, "mean age of parents in `YEARS` from when an animal is first counted, in place of --survival")
 	f.Float64Var(&in.make.Split, "split", 0.5, "`SHARE` of the environmental variance that births have; deaths have the rest (for --write)")
-	f.StringVar(&in.make.Model, "model", "", "`NAME` of the model of growth to write (default: the one of the lowest AICc)")
+	f.StringVar(&in.make.Model, "model", "", "`NAME` of the model of growth to write (default: the one of the lowest AICc but theta-logistic)")
 	f.Float64Var(&in.opt.Threshold, "threshold", 0, "`ABUNDANCE` at or below which the population has fallen (default: a tenth of the last count)")
 	f.IntVar(&in.opt.Horizon, "horizon", 50, "`YEARS` to look ahead")
 	f.StringVar(&in.zeros, "zeros", "", "what a count of 0 means: `missing or half`")
@@ -67,11 +70,7 @@ func (in *fitInput) run(a *app, path string) error {
 	if err := in.check(); err != nil {
 		return err
 	}
-	data, err := readBounded(path, largestCase)
-	if err != nil {
-		return badInput{err}
-	}
-	series, err := fit.Read(filepath.Base(path), data)
+	series, err := readCounts(path)
 	if err != nil {
 		return badInput{err}
 	}
@@ -106,7 +105,7 @@ func (in *fitInput) run(a *app, path string) error {
 		if err := reports.Save(in.write, file); err != nil {
 			return err
 		}
-		said += "Wrote " + in.write + ". Look it over, then: ebbline check " + in.write + "\n"
+		said += "Wrote " + in.write + ". Look it over, then: ebbline assess " + in.write + "\n"
 	}
 	if !in.quiet {
 		a.say(in.json == "-", said)
@@ -149,6 +148,9 @@ func (in *fitInput) check() error {
 func (in *fitInput) makeCase(r *fit.Result) (*fit.Written, []byte, error) {
 	in.make.ThresholdSaid = in.flags.Changed("threshold")
 	in.make.HorizonSaid = in.flags.Changed("horizon")
+	if in.make.BreedingAssumed = !in.flags.Changed("breeding"); in.make.BreedingAssumed {
+		in.make.Breeding = "pulse"
+	}
 	w, err := r.Case(in.make)
 	if err != nil {
 		return nil, nil, err

@@ -8,11 +8,15 @@ import (
 )
 
 // Write is the case as a case file: what was given, in the order of the key
-// table, with sources and notes; nothing that is only a default. Read gives the
-// same case back, with the same digest.
+// table, with the sources and notes of numbers (a word has none in a case file,
+// though it may in a workbook); nothing that is only a default. Read gives the
+// same case back, with the same digest unless a word lost its source.
 func Write(c *pva.Case) []byte {
 	root := &tree{}
 	for _, e := range pva.Ordered(c.Entries()) {
+		if e.Value.Kind != pva.NumberKind {
+			e.Source, e.Note = "", ""
+		}
 		root.put(e)
 	}
 	var b bytes.Buffer

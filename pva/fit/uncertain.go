@@ -13,6 +13,9 @@ func (b *caseWriter) explain() {
 	u := r.unit()
 	if m.crowded {
 		b.how("Growth follows the %s curve of the counts, with crowding on births; the case's growth lies %.2g from it, root mean square over the counts.", b.model.Name, m.off)
+		if b.o.Model == "" && r.Best == ThetaModel {
+			b.how("The %s has the lowest AICc but no standard errors, and its exponent is seldom found from counts (Clark et al. 2010): it is written only if --model names it.", ThetaModel)
+		}
 	} else {
 		b.how("Growth has the fitted mean of %.4g a %s (log scale), without crowding.", w.Growth, u)
 	}
@@ -25,6 +28,15 @@ func (b *caseWriter) explain() {
 		b.how("Observation error (variance %.3g of a log count) is taken out of that variance.", r.Split.Observation.Value)
 	case m.crowded:
 		b.how("Observation error is not taken out: the regression does not part it from the weather.")
+	}
+	if b.o.BreedingAssumed {
+		b.doubt("births are assumed to come once a %s: state --breeding pulse or --breeding flow", u)
+	}
+	if s := r.Split; !r.separated() && !m.crowded && s.Observation.Value > 0 {
+		b.doubt("the split of the variance leaves nothing to the process, which is true of no population: the case keeps the whole variance, errors of counting and all; state those errors (column se or cv) if they are known")
+	}
+	if m.crowded && b.o.Model == "" {
+		b.doubt("errors of counting alone can look like crowding (Shenk, White & Burnham 1998, Ecol. Monogr. 68:445-463), and crowding lowers the risk: write a second case with --model %s and assess both", Exponential)
 	}
 	if w.Weather == 0 {
 		b.doubt("the counts vary no more than births and deaths of single animals would make them at a survival of %.3g: no weather is left in the case, though the interval of the variance reaches %.3g", w.Survival, r.variance(b.model).High)
@@ -73,7 +85,7 @@ func (b *caseWriter) uncertain() {
 		// would leave no law of two.
 		b.put("uncertain_pair.1.keys.1", pva.Text("births.year_sd"), "", "")
 		b.put("uncertain_pair.1.keys.2", pva.Text("deaths.year_sd"), "", "")
-		b.number("uncertain_pair.1.rank_correlation", 0.99, "", "")
+		b.number("uncertain_pair.1.rank_correlation", 0.99, b.source(), "one fitted variance stands behind both")
 	}
 	b.doubt("the stated survival is taken as known: mark deaths.fraction as uncertain if it is not")
 }

@@ -12,14 +12,21 @@ import (
 // CaseOptions say how a case is made from a fit. Counts alone give neither
 // births nor deaths, so Breeding must be stated, and Survival or Generation.
 type CaseOptions struct {
-	Breeding   string  // "pulse" or "flow"
+	Breeding string // "pulse" or "flow"
+	// BreedingAssumed says that nobody stated Breeding: the case tells so.
+	BreedingAssumed bool
+
 	Survival   float64 // mean share of the counted animals that survive a time unit; 0 is not stated
 	Generation float64 // mean age of parents, in time units from when an animal is first counted; 0 is not stated
 	// Split is the share of the environmental variance of log growth that is
 	// given to births, 0 to 1; the rest goes to deaths.
-	Split         float64
-	Model         string // the model of growth; "" is the one of the lowest AICc
-	ThresholdSaid bool   // the threshold and horizon of the fit were stated, not defaults
+	Split float64
+	// Model is the model of growth; "" is the one of the lowest AICc, the
+	// theta-logistic left out: its exponent and capacity are found so badly from
+	// counts (F. Clark et al. 2010, Methods Ecol. Evol. 1:253-262), and without
+	// standard errors, that a case would be surer than the counts are.
+	Model         string
+	ThresholdSaid bool // the threshold and horizon of the fit were stated, not defaults
 	HorizonSaid   bool
 }
 
@@ -89,10 +96,7 @@ func (r *Result) caseModel(o CaseOptions) (*Model, error) {
 	}
 	name := o.Model
 	if name == "" {
-		name = r.Best
-	}
-	if name == "" {
-		name = Exponential // too few steps of one time unit to compare models
+		name = r.modelToWrite()
 	}
 	m := r.model(name)
 	switch {
@@ -104,6 +108,21 @@ func (r *Result) caseModel(o CaseOptions) (*Model, error) {
 		return nil, fmt.Errorf("model: %s: an exponent of %.3g is a wall and no curve; choose another model", name, m.Theta)
 	}
 	return m, nil
+}
+
+// modelToWrite is the model of a case whose maker names none.
+func (r *Result) modelToWrite() string {
+	best := (*Model)(nil)
+	for i := range r.Models {
+		m := &r.Models[i]
+		if m.Refused == "" && m.Name != ThetaModel && (best == nil || m.AICc < best.AICc) {
+			best = m
+		}
+	}
+	if best == nil || r.Best == "" {
+		return Exponential // too few steps of one time unit to compare models
+	}
+	return best.Name
 }
 
 // target is what the case is to reproduce, without the survival.
@@ -124,8 +143,14 @@ func (r *Result) target(model *Model, o CaseOptions) target {
 	return t
 }
 
-// separated says whether observation error was taken out of the variance.
-func (r *Result) separated() bool { return r.Split.Stated || r.Split.Observation.Value > 0 }
+// separated says whether observation error is taken out of the variance. A
+// fitted split that leaves no process variance at all is not followed: the
+// likelihood often peaks there by chance (B. Dennis et al. 2006, Ecol. Monogr.
+// 76:323-341), and a case without weather would be surer than the counts are.
+func (r *Result) separated() bool {
+	s := r.Split
+	return s.Stated || s.Observation.Value > 0 && s.Process.Value > 0
+}
 
 // growth is the drift in force: that of the state-space model where it takes
 // out observation error.
@@ -275,7 +300,7 @@ func (b *caseWriter) asked() {
 	o := b.r.Options
 	said := func(said bool) (string, string) {
 		if said {
-			return "", ""
+			return "stated for the fit", ""
 		}
 		return "assumed", "set by default: state your own"
 	}
@@ -288,7 +313,7 @@ func (b *caseWriter) asked() {
 	source, note = said(b.o.HorizonSaid)
 	b.number("question.horizon", float64(o.Horizon), source, note)
 	if o.Confidence != defaultConfidence {
-		b.number("question.confidence", o.Confidence, "", "")
+		b.number("question.confidence", o.Confidence, "stated for the fit", "")
 	}
 }
 
@@ -310,10 +335,14 @@ func (b *caseWriter) survivalSource() string {
 }
 
 func (b *caseWriter) birthNote() string {
+	note := fmt.Sprintf("solved for a mean log growth of %.4g at the stated survival", b.w.Growth)
 	if b.m.crowded {
-		return fmt.Sprintf("solved for the %s curve of growth at the stated survival", b.model.Name)
+		note = fmt.Sprintf("solved for the %s curve of growth at the stated survival", b.model.Name)
 	}
-	return fmt.Sprintf("solved for a mean log growth of %.4g at the stated survival", b.w.Growth)
+	if b.o.BreedingAssumed {
+		note += fmt.Sprintf("; births once a %s are assumed", b.r.unit())
+	}
+	return note
 }
 
 // spread writes a between-year standard deviation, unless it is none.

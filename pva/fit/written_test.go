@@ -418,3 +418,62 @@ func TestCaseMemory(t *testing.T) {
 		}
 	}
 }
+
+// declining is an invented series of 25 counts, drawn with a mean log growth of
+// -0.02, a process standard deviation of 0.14 and a counting error of 8 %. By
+// chance its likelihood leaves nothing to the process, and the theta-logistic
+// has the lowest AICc.
+func declining(t *testing.T) *Result {
+	t.Helper()
+	s := &Series{File: "fen.csv", TimeUnit: "year"}
+	for i, n := range []float64{136, 168, 127, 143, 142, 136, 152, 150, 175, 126, 113, 109, 112, 129, 103, 115, 109, 113, 159, 127, 94, 103, 108, 96, 93} {
+		s.Counts = append(s.Counts, Count{Year: float64(2000 + i), Count: n})
+	}
+	r, err := Fit(s, Options{Threshold: 20, Horizon: 30, Resamples: 100})
+	if err != nil {
+		t.Fatal(err)
+	}
+	return r
+}
+
+// TestCaseIsNoSurerThanTheCounts: a case of which nobody named the model is not
+// the theta-logistic, and one whose split leaves no process variance keeps the
+// variance of the drift model; both are told, and so is an assumed breeding.
+func TestCaseIsNoSurerThanTheCounts(t *testing.T) {
+	r := declining(t)
+	if r.Best != ThetaModel || r.Split.Process.Value != 0 || !(r.Split.Observation.Value > 0) {
+		t.Fatalf("the series shows nothing: best %s, split %+v", r.Best, r.Split)
+	}
+	o := CaseOptions{Breeding: "pulse", BreedingAssumed: true, Survival: 0.8, Split: 0.5, ThresholdSaid: true, HorizonSaid: true}
+	w, err := r.Case(o)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if w.Model != RickerModel {
+		t.Errorf("the case is %s", w.Model)
+	}
+	told := strings.Join(w.How, " ")
+	for _, d := range w.Doubts {
+		told += " " + d.Text
+	}
+	for _, want := range []string{"only if --model names it", "can look like crowding", "assumed to come once a year"} {
+		if !strings.Contains(told, want) {
+			t.Errorf("does not tell %q: %s", want, told)
+		}
+	}
+	o.Model, o.BreedingAssumed = Exponential, false
+	if w, err = r.Case(o); err != nil {
+		t.Fatal(err)
+	}
+	if !(w.Variance == r.Drift.Variance.Value && w.Weather > 0) {
+		t.Errorf("variance %g with weather %g, want the whole %g", w.Variance, w.Weather, r.Drift.Variance.Value)
+	}
+	if !strings.Contains(w.Doubts[0].Text, "leaves nothing to the process") {
+		t.Errorf("the variance kept is not told: %v", w.Doubts)
+	}
+	for _, e := range w.Entries {
+		if e.Value.Kind == pva.NumberKind && e.Source == "" {
+			t.Errorf("%s has no source", e.Path)
+		}
+	}
+}

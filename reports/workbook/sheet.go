@@ -133,6 +133,10 @@ func (b *book) table(p place, widths []float64) {
 		}
 		b.try(b.f.SetRowHeight(sheet, p.head+1+i, math.Min(409, float64(tall)*lineHeight+1.8)))
 	}
+	if p.t.Shaded && len(p.t.Rows) > 0 && len(p.t.Columns) > 1 {
+		b.try(b.f.SetConditionalFormat(sheet, p.at(0, 1)+":"+p.at(len(p.t.Rows)-1, len(p.t.Columns)-1), []excelize.ConditionalFormatOptions{
+			{Type: "2_color_scale", Criteria: "=", MinType: "min", MaxType: "max", MinColor: "#FFFFFF", MaxColor: "#56B4E9"}}))
+	}
 }
 
 // tints are the grounds of verdicts and of inputs that rest on little; the words
