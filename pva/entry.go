@@ -89,7 +89,11 @@ func (c *Case) Digest() string {
 		if e.Value.Kind == NumberKind {
 			v = strconv.FormatFloat(e.Value.Num, 'g', -1, 64)
 		}
-		rows = append(rows, strings.Join([]string{e.Path, strconv.Itoa(int(e.Value.Kind)), v, e.Source, e.Note}, "\x1f"))
+		source, note := e.Source, e.Note
+		if e.Value.Kind != NumberKind {
+			source, note = "", "" // words carry no provenance: a case file has no place for it
+		}
+		rows = append(rows, strings.Join([]string{e.Path, strconv.Itoa(int(e.Value.Kind)), v, source, note}, "\x1f"))
 	}
 	sum := sha256.Sum256([]byte(strings.Join(rows, "\x1e")))
 	return "sha256:" + hex.EncodeToString(sum[:])

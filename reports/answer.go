@@ -72,11 +72,23 @@ func figures(a *pva.Assessment) []Figure {
 	if a.Sequential {
 		risk.Note = level + " interval that holds however often one looks (a confidence sequence), " + counted(o.Risk.Of, "replicate")
 	}
+	u := a.Uncertainty
+	if u != nil {
+		risk.Note = level + " interval of the mean risk over " + counted(int64(u.Draws), "draw") + ", " + counted(o.Risk.Of, "replicate")
+	}
 	exact, base := exactAnswer(a.Exact), exactAnswer(a.BaselineExact)
 	if exact != nil {
 		risk.led(Percent(exact.Risk, 0))
 	}
 	out := []Figure{risk}
+	if u != nil && u.Case.Law.Reason == "" {
+		// How sure one can be: the mean's own interval says little of a single
+		// population, whose rates are those of one draw.
+		p := u.Case.Law.Percentiles
+		span := Percent(p.P05, 0) + " to " + Percent(p.P95, 0)
+		out = append(out, Figure{ID: "draws", Label: "in nine of ten draws", Text: span, Lead: span, Beside: "half of them below " + Percent(p.P50, 0),
+			Value: p.P50, Low: p.P05, High: p.P95, HasInterval: true, Note: "the risk over the draws of the uncertain inputs: " + span + " in nine of ten, half of them below " + Percent(p.P50, 0)})
+	}
 	if a.Baseline != nil {
 		f := proportionFigure("baseline", "without the take", a.Baseline.Risk)
 		if base != nil {

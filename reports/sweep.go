@@ -3,7 +3,6 @@ package reports
 import (
 	"fmt"
 	"math"
-	"strings"
 
 	"ebbline/pva"
 	"ebbline/pva/sweep"
@@ -93,7 +92,7 @@ func sweepReport(s *sweep.Study, meta Meta, risk pva.Proportion, v pva.Verdict, 
 	f := proportionFigure("risk", "the case as stated", risk)
 	f.Note = percentOf(c.Question.Confidence) + " interval, " + counted(risk.Of, "replicate")
 	if risk.Of == 0 {
-		f.Note = "by the exact answer"
+		f.Note, f.Interval, f.Beside, f.HasInterval = "by the exact answer", "", "", false
 	}
 	r.Figures = []Figure{f}
 	r.ShortCautions, r.Cautions = SweepCautions(c)
@@ -220,7 +219,7 @@ func sizeWords(q *sweep.Sizes) string {
 	case "capacity":
 		return "carrying capacity"
 	case "both":
-		return "start, the capacity in proportion,"
+		return "start (the capacity in proportion)"
 	}
 	return "start"
 }
@@ -229,7 +228,15 @@ func minimumText(q *sweep.Sizes, l *sweep.Crossing) string {
 	if !l.Found {
 		return "No minimum: " + l.Reason + "."
 	}
-	return "The smallest viable " + strings.TrimSuffix(sizeWords(q), ",") + " is " + Plain(l.Value) + "."
+	s := "The smallest viable " + sizeWords(q) + " is " + Plain(l.Value)
+	if n := crossingNumbers(l, ""); n[1].Text != "none" {
+		s += "; undecided are " + n[1].Text
+	}
+	s += "."
+	if l.Reason != "" {
+		s += " " + sentence(l.Reason) + "."
+	}
+	return s
 }
 
 // traceTable is the values that a search looked at.
@@ -255,7 +262,7 @@ func traceTable(l *sweep.Crossing, title string) *Table {
 }
 
 func traceChart(l *sweep.Crossing, title, axis string, limit float64) Chart {
-	ch := Chart{ID: "trace", Title: title, XTitle: axis, YTitle: "Risk", Table: "trace", X: "value", Percent: true,
+	ch := Chart{ID: "trace", Title: title, XTitle: axis + " (as looked at)", YTitle: "Risk", Table: "trace", X: "value", Percent: true,
 		Series: []Series{{Name: percentOf(l.Confidence) + " interval", Role: Band, Low: "low", High: "high"}, {Name: "Risk", Role: Main, Value: "estimate"}}}
 	if !math.IsNaN(limit) {
 		ch.Series = append(ch.Series, Series{Name: "Limit, " + percentOf(limit), Role: LimitLine, Constant: "{figures:limit:estimate}", Level: limit})

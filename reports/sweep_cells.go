@@ -2,6 +2,8 @@ package reports
 
 import (
 	"slices"
+	"strconv"
+	"strings"
 
 	"ebbline/pva/sweep"
 )
@@ -153,19 +155,45 @@ func tradeOffTable(s *sweep.Result) *Table {
 	c := s.Study.Base
 	pct := Format{Percents, tableDigits(s.Replicates)}
 	b := newTable("trade_off", "Yield against risk: the cells that no other beats").column("taken", "Taken a "+c.TimeUnit, c.Counts, Format{Decimal, 2})
-	b.column("estimate", "Risk", "", pct).column("low", "Low", "", pct).column("high", "High", "", pct).wide("cell", "Cell")
+	b.column("estimate", "Risk", "", pct).column("low", "Low", "", pct).column("high", "High", "", pct)
+	for d, dim := range s.Study.Dimensions {
+		b.column("key_"+yearID(d+1), dim.Key, dim.Unit, Format{Kind: General})
+	}
 	for i, o := range best {
-		b.row("best_"+yearID(i+1), map[string]Cell{"taken": num(o.TakeMean), "estimate": num(o.Risk.Estimate), "low": num(o.Risk.Low), "high": num(o.Risk.High), "cell": text(s.Study.Label(o.Cell))})
+		// Rounded, because the labels of a chart show a number whole; every cell's
+		// take stands unrounded in the table of all cells.
+		cells := map[string]Cell{"taken": num(rounded(o.TakeMean, 4)), "estimate": num(o.Risk.Estimate), "low": num(o.Risk.Low), "high": num(o.Risk.High)}
+		for d, v := range o.Values {
+			cells["key_"+yearID(d+1)] = num(v)
+		}
+		b.row("best_"+yearID(i+1), cells)
 	}
 	return b.t
 }
 
 func tradeOffChart(s *sweep.Result, t *Table) Chart {
 	c := s.Study.Base
-	last := t.Rows[len(t.Rows)-1]
-	return Chart{ID: "trade_off", Title: "Yield against risk", XTitle: "Taken a " + c.TimeUnit, YTitle: "Risk", Table: "trade_off", X: "taken", Percent: true,
+	end := len(t.Rows) - 1
+	var keys []string
+	for d, dim := range s.Study.Dimensions {
+		keys = append(keys, dim.Key+" = "+t.Shown(end, 4+d))
+	}
+	ch := Chart{ID: "trade_off", Title: "Yield against risk", XTitle: "Taken a " + c.TimeUnit, YTitle: "Risk", Table: "trade_off", X: "taken", Percent: true,
 		Series: []Series{{Name: percentOf(c.Question.Confidence) + " interval", Role: Band, Low: "low", High: "high"}, {Name: "Risk", Role: Main, Value: "estimate"}},
-		Alt:    "Line: the least risk for each yield; the largest yield, " + t.Shown(len(t.Rows)-1, 0) + " a " + c.TimeUnit + ", carries a risk of " + t.Shown(len(t.Rows)-1, 1) + " (" + last.Cells[4].Text + ")."}
+		Alt:    "Line: the least risk for each yield; the largest yield, " + t.Shown(end, 0) + " a " + c.TimeUnit + ", carries a risk of " + t.Shown(end, 1) + " (" + strings.Join(keys, ", ") + ")."}
+	if l := c.Question.Limit; l.Set {
+		ch.Series = append(ch.Series, Series{Name: "Limit, " + percentOf(l.Value), Role: LimitLine, Constant: cellLimit, Level: l.Value})
+	}
+	return ch
+}
+
+// rounded is a number to so many significant digits.
+func rounded(v float64, digits int) float64 {
+	r, err := strconv.ParseFloat(strconv.FormatFloat(v, 'g', digits, 64), 64)
+	if err != nil {
+		return v
+	}
+	return r
 }
 
 // mattersPart is which inputs move the risk most, and what other forms of the
@@ -197,11 +225,13 @@ func mattersPart(s *sweep.Result, z scores) Part {
 func doubtsTable(s *sweep.Result) *Table {
 	d := sweep.DoubtsOf(s)
 	pct := Format{Percents, tableDigits(s.Replicates)}
-	b := newTable("doubts", "").column("source", "Source of doubt", "", Format{}).column("low", "Lowest risk", "", pct).column("high", "Highest risk", "", pct).column("cells", "Variants", "", Format{Kind: Counts}).wide("by", "Lowest and highest by")
-	b.row("replicates", map[string]Cell{"source": text("Replicates"), "low": num(d.Replicates.Low), "high": num(d.Replicates.High), "by": text("the interval of the case as stated")})
+	b := newTable("doubts", "").column("source", "Source of doubt", "", Format{}).column("low", "Lowest risk", "", pct).column("high", "Highest risk", "", pct).column("cells", "Variants", "", Format{Kind: Counts})
+	b.row("replicates", map[string]Cell{"source": text("Replicates"), "low": num(d.Replicates.Low), "high": num(d.Replicates.High)})
+	b.t.Note = "Replicates: the interval of the case as stated."
 	add := func(id, name string, span sweep.Span) {
 		if span.Cells > 0 {
-			b.row(id, map[string]Cell{"source": text(name), "low": num(span.Low), "high": num(span.High), "cells": num(float64(span.Cells)), "by": text(span.LowBy + "; " + span.HighBy)})
+			b.row(id, map[string]Cell{"source": text(name), "low": num(span.Low), "high": num(span.High), "cells": num(float64(span.Cells))})
+			b.t.Note += " " + name + ": lowest by " + span.LowBy + ", highest by " + span.HighBy + "."
 		}
 	}
 	add("inputs", "Inputs, one at a time", d.Inputs)

@@ -148,7 +148,7 @@ func (a *app) sweep(o *sweepOptions, args []string) error {
 	defer runner.Close()
 	a.tellDamage(runner)
 	if runner.Before > 0 && !o.quiet {
-		fmt.Fprintf(a.errs, "Going on with %s: %d units are done.\n", opt.Ledger, runner.Before)
+		fmt.Fprintf(a.errs, "Going on with %s: units done so far: %d.\n", opt.Ledger, runner.Before)
 	}
 	folder := o.csv
 	if folder == "" || shards > 0 {

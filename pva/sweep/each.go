@@ -20,7 +20,7 @@ func NewEach(c *pva.Case, by float64, structures bool) (*Study, error) {
 		return nil, fmt.Errorf("--each %v %%: give a change above 0 and below 100 %%, such as 10%%", 100*by)
 	}
 	s := &Study{Kind: Each}
-	if err := s.start(c); err != nil {
+	if err := s.startPlain(c); err != nil {
 		return nil, err
 	}
 	for _, e := range pva.Ordered(c.Entries()) {
@@ -40,7 +40,7 @@ func NewEach(c *pva.Case, by float64, structures bool) (*Study, error) {
 // NewStructures is a case under the other defensible forms of its model alone.
 func NewStructures(c *pva.Case) (*Study, error) {
 	s := &Study{Kind: Structures}
-	if err := s.start(c); err != nil {
+	if err := s.startPlain(c); err != nil {
 		return nil, err
 	}
 	if err := s.addForms(); err != nil {
@@ -94,7 +94,7 @@ func (s *Study) change(e pva.Entry, k *pva.Key, by float64) {
 			s.Left = append(s.Left, LeftOut{name, fmt.Sprintf("%v is the end of what it may be", to)})
 			continue
 		}
-		if _, err := modelOf(s.Base, s.base, set, false); err != nil {
+		if _, err := modelOf(s.plain, s.base, set, false); err != nil {
 			s.Left = append(s.Left, LeftOut{name, fmt.Sprintf("it cannot be %v: %v", to, oneLine(err))})
 			continue
 		}
@@ -187,7 +187,7 @@ func (s *Study) addForms() error {
 				ch.Set = append(ch.Set, pva.Setting{Path: "weather.memory", Value: pva.Num(w.memory)})
 			}
 			// A form that cannot have this capacity is no other form of the case.
-			if _, err := modelOf(c, s.base, ch.Set, true); err != nil {
+			if _, err := modelOf(s.plain, s.base, ch.Set, true); err != nil {
 				s.Left = append(s.Left, LeftOut{ch.Name, oneLine(err)})
 				continue
 			}
@@ -272,7 +272,7 @@ type Doubts struct {
 func DoubtsOf(r *Result) Doubts {
 	d := Doubts{Replicates: r.Case.Risk}
 	stated := r.Case.Risk.Estimate
-	d.Inputs = Span{Low: stated, High: stated, LowBy: "as stated", HighBy: "as stated"}
+	d.Inputs = Span{Low: stated, High: stated, LowBy: "the case as stated", HighBy: "the case as stated"}
 	d.Forms = d.Inputs
 	for i, ch := range r.Study.Changes {
 		o := r.Cells[i]

@@ -6,6 +6,7 @@ import (
 	"errors"
 	"fmt"
 	"runtime"
+	"slices"
 	"strconv"
 	"strings"
 	"sync"
@@ -32,6 +33,7 @@ type Study struct {
 	Left []LeftOut
 
 	base   *rates.Model
+	plain  *pva.Case // what cells are made from: the case, or the case without laws of uncertain inputs
 	n      int
 	cell   func(i int) []pva.Setting
 	strict bool // a capacity without a solution is a fault, not counted
@@ -119,7 +121,25 @@ func (s *Study) start(c *pva.Case) error {
 	if len(faults) > 0 {
 		return pva.Faults(faults)
 	}
-	s.Base, s.base = c, m
+	s.Base, s.base, s.plain = c, m, c
+	return nil
+}
+
+// startPlain takes the case, and makes its cells from it without the laws of
+// uncertain inputs: these are not drawn here, and a law around an input that
+// another form does not have must not stand in the way of that form.
+func (s *Study) startPlain(c *pva.Case) error {
+	if err := s.start(c); err != nil {
+		return err
+	}
+	entries := slices.DeleteFunc(c.Entries(), func(e pva.Entry) bool {
+		return strings.HasPrefix(e.Path, "uncertain.") || strings.HasPrefix(e.Path, "uncertain_pair.")
+	})
+	plain, faults := pva.Build(entries)
+	if len(faults) > 0 {
+		return faults
+	}
+	s.plain = plain
 	return nil
 }
 
@@ -193,7 +213,7 @@ func (s *Study) Settings(i int) []pva.Setting { return s.cell(i) }
 
 // model is a cell as formulas.
 func (s *Study) model(i int) (*rates.Model, error) {
-	return modelOf(s.Base, s.base, s.cell(i), s.strict)
+	return modelOf(s.plain, s.base, s.cell(i), s.strict)
 }
 
 // modelOf is a case with settings as formulas. Where its capacity has no

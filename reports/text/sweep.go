@@ -44,7 +44,7 @@ func Sweep(r *sweep.Result, largest *sweep.Crossing, file string) string {
 		}
 	}
 	if r.Unsolved > 0 {
-		b.WriteString("\n" + wrap(fmt.Sprintf("Doubt: in %s no scale reaches the capacity; the case's own scales are kept there.", countOf(int64(r.Unsolved), "cell")), "", 2))
+		b.WriteString("\n" + wrap(fmt.Sprintf("Warning: in %s no scale reaches the capacity; the case's own scales are kept there.", countOf(int64(r.Unsolved), "cell")), "", 2))
 	}
 	b.WriteString(doubts(r.Study))
 	return b.String() + "\n" + cautions(c)
@@ -106,7 +106,7 @@ func gridRows(r *sweep.Result) string {
 	}
 	var head []string
 	for _, d := range dims {
-		head = append(head, shorten(d.Key, max(5, 28/len(dims))))
+		head = append(head, shortKey(d.Key, max(8, 30/len(dims))))
 	}
 	takes := false
 	for _, o := range shown {
@@ -154,6 +154,18 @@ func gridRows(r *sweep.Result) string {
 		out += wrap(note, "  ", 0)
 	}
 	return out
+}
+
+// shortKey is a key that fits: without the parts before its last ones.
+func shortKey(key string, n int) string {
+	for len([]rune(key)) > n {
+		_, rest, more := strings.Cut(key, ".")
+		if !more {
+			return shorten(key, n)
+		}
+		key = rest
+	}
+	return key
 }
 
 func shortVerdict(v pva.Verdict) string {
@@ -235,7 +247,7 @@ func influenceRows(order []sweep.Influence, r *sweep.Result) string {
 		}
 		less, lessRisk := cell(in.Less, in.LessTo)
 		more, moreRisk := cell(in.More, in.MoreTo)
-		rows = append(rows, []string{shorten(in.Key, 30), less, lessRisk, more, moreRisk, reports.PointsText(in.Span, r.Replicates)})
+		rows = append(rows, []string{shortKey(in.Key, 30), less, lessRisk, more, moreRisk, reports.PointsText(in.Span, r.Replicates)})
 	}
 	out := columns(rows, "  ", false, true, true, true, true, true)
 	if n := len(order); n > 12 {
@@ -251,14 +263,17 @@ func doubtRows(r *sweep.Result) string {
 	rows := [][]string{{"three sources of doubt", "risk", ""},
 		{"replicates", reports.PercentRange(d.Replicates.Low, d.Replicates.High, n), "the interval of the case as stated"}}
 	if d.Inputs.Cells > 0 {
-		rows = append(rows, []string{"inputs, one at a time", reports.PercentRange(d.Inputs.Low, d.Inputs.High, n), shorten(d.Inputs.LowBy+" to "+d.Inputs.HighBy, 34)})
+		rows = append(rows, []string{"inputs, one at a time", reports.PercentRange(d.Inputs.Low, d.Inputs.High, n), countOf(int64(d.Inputs.Cells), "change")})
 	}
 	if d.Forms.Cells > 0 {
 		rows = append(rows, []string{"other forms of the model", reports.PercentRange(d.Forms.Low, d.Forms.High, n), countOf(int64(d.Forms.Cells), "form")})
 	}
 	out := columns(rows, "  ")
+	if d.Inputs.Cells > 0 {
+		out += wrap("Inputs: lowest by "+d.Inputs.LowBy+", highest by "+d.Inputs.HighBy+".", "  ", 2)
+	}
 	if d.Forms.Cells > 0 {
-		out += wrap("Lowest: "+d.Forms.LowBy+". Highest: "+d.Forms.HighBy+".", "  ", 0)
+		out += wrap("Forms: lowest by "+d.Forms.LowBy+", highest by "+d.Forms.HighBy+".", "  ", 2)
 	}
 	return out
 }
