@@ -46,19 +46,36 @@ func Save(path string, data []byte) error {
 	}
 	if err := fill(f, data); err != nil {
 		os.Remove(temporary)
-		return fmt.Errorf("%s: not written, the old file is as it was: %w", path, err)
+		return notWritten(path, mode != 0, err)
 	}
 	if mode != 0 {
 		if err := os.Chmod(temporary, mode); err != nil {
 			os.Remove(temporary)
-			return fmt.Errorf("%s: not written, the old file is as it was: %w", path, err)
+			return notWritten(path, mode != 0, err)
 		}
 	}
 	if err := os.Rename(temporary, path); err != nil {
 		os.Remove(temporary)
-		return fmt.Errorf("%s: not written, the old file is as it was: %w", path, err)
+		return notWritten(path, mode != 0, err)
 	}
 	return syncFolder(filepath.Dir(path))
+}
+
+// notWritten is the error of a save that failed: the cause alone, without the
+// temporary file's name, and what is left.
+func notWritten(path string, old bool, err error) error {
+	var p *fs.PathError
+	var l *os.LinkError
+	switch {
+	case errors.As(err, &p):
+		err = p.Err
+	case errors.As(err, &l):
+		err = l.Err
+	}
+	if old {
+		return fmt.Errorf("%s: not written, the old file is as it was: %w", path, err)
+	}
+	return fmt.Errorf("%s: nothing was written: %w", path, err)
 }
 
 // beside makes a new hidden file in the folder of path; several programs may do
