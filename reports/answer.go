@@ -86,8 +86,8 @@ func figures(a *pva.Assessment) []Figure {
 		// population, whose rates are those of one draw.
 		p := u.Case.Law.Percentiles
 		span := Percent(p.P05, 0) + " to " + Percent(p.P95, 0)
-		out = append(out, Figure{ID: "draws", Label: "in nine of ten draws", Text: span, Lead: span, Beside: "half of them below " + Percent(p.P50, 0),
-			Value: p.P50, Low: p.P05, High: p.P95, HasInterval: true, Note: "the risk over the draws of the uncertain inputs: " + span + " in nine of ten, half of them below " + Percent(p.P50, 0)})
+		out = append(out, Figure{ID: "draws", Label: "half of the draws below", Text: Percent(p.P50, 0), Lead: Percent(p.P50, 0), Beside: "nine in ten from " + span,
+			Value: p.P50, Low: p.P05, High: p.P95, HasInterval: true, Note: "the risk over the draws of the uncertain inputs: nine in ten from " + span})
 	}
 	if a.Baseline != nil {
 		f := proportionFigure("baseline", "without the take", a.Baseline.Risk)
