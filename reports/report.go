@@ -35,13 +35,17 @@ type Report struct {
 	Confidence               float64
 	Verdict                  pva.Verdict
 	VerdictText              string // the verdict and what it rests on, in a sentence; "" without a limit
-	Figures                  []Figure
-	Numbers                  []Number // five numbers that matter beside the risk
-	Parts                    []Part   // in order; the first is the answer
-	Provenance               Provenance
-	Warnings                 []string
-	ShortCautions            []Caution
-	Cautions                 []Caution
+	// Head is the large figure of the first page where the answer is no risk (a
+	// size, a take), and HeadBeside what stands beside it; "" where the first of
+	// Figures is the answer.
+	Head, HeadBeside string
+	Figures          []Figure
+	Numbers          []Number // five numbers that matter beside the risk
+	Parts            []Part   // in order; the first is the answer
+	Provenance       Provenance
+	Warnings         []string
+	ShortCautions    []Caution
+	Cautions         []Caution
 }
 
 // Part is one sheet or chapter of a report.

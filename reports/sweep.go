@@ -34,6 +34,9 @@ func BuildSweep(s *sweep.Result, largest *sweep.Crossing, meta Meta) *Report {
 		limit = c.Question.Limit.Value
 		r.VerdictText = "The case as stated: " + string(s.Case.Verdict) + " of " + percentOf(limit) + "." + largestText(largest)
 	}
+	if largest != nil {
+		r.Head, r.HeadBeside = crossingHead(largest, "the largest "+largest.Key+" within the limit")
+	}
 	answer := sweepAnswer(r, s.Case, limit, z)
 	var parts []Part
 	switch {
@@ -72,6 +75,7 @@ func BuildMinimum(s *sweep.Study, q *sweep.Sizes, l *sweep.Crossing, meta Meta) 
 		counted(int64(q.Horizon), c.TimeUnit), percentOf(q.Risk))
 	r.Figures[0].Label = "the risk at " + Plain(at.Value)
 	r.VerdictText = minimumText(q, l)
+	r.Head, r.HeadBeside = crossingHead(l, "the smallest viable "+sizeWords(q)+", "+c.Counts)
 	r.Replicates, r.Asked = c.Run.Replicates, c.Run.Replicates
 	r.Numbers = crossingNumbers(l, "smallest viable "+sizeWords(q))
 	z := newScores(c.Question.Confidence)
@@ -222,6 +226,18 @@ func sizeWords(q *sweep.Sizes) string {
 		return "start (the capacity in proportion)"
 	}
 	return "start"
+}
+
+// crossingHead is the large figure of a search: its answer, and the stretch in
+// which the verdict is undecided.
+func crossingHead(l *sweep.Crossing, what string) (head, beside string) {
+	if !l.Found {
+		return "none", what
+	}
+	if n := crossingNumbers(l, ""); n[1].Text != "none" {
+		what += "; undecided: " + n[1].Text
+	}
+	return Plain(l.Value), what
 }
 
 func minimumText(q *sweep.Sizes, l *sweep.Crossing) string {

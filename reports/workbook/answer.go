@@ -144,21 +144,17 @@ func (b *book) answerHead(sheet string) {
 	b.across(sheet, rowQuestion, r.Question, styleKey{size: 13, middle: true})
 
 	// The large figure is the one that the verdict uses.
-	risk := r.Figures[0]
 	figures := b.places["figures"]
 	lead := "risk"
 	if figures.t.Row("exact") >= 0 {
 		lead = "exact"
 	}
-	cell := figures.t.Cell(lead, "estimate")
-	b.put(sheet, cellName(1, rowBig), cell,
-		b.style(styleKey{bold: true, size: 34, colour: blue, middle: true, format: numberFormat(figures.t.FormatOf(figures.t.Row(lead), figures.t.Column("estimate")), cell.Num)}))
-	b.formula(sheet, cellName(1, rowBig), b.fixed(sheet, "{figures:"+lead+":estimate}"))
-	beside := risk.Beside
-	if beside == "" {
-		beside = risk.Interval
+	if r.Head != "" {
+		b.say(sheet, cellName(1, rowBig), r.Head, styleKey{bold: true, size: 34, colour: blue, middle: true})
+		b.say(sheet, cellName(2, rowBig), r.HeadBeside, styleKey{size: 13, middle: true})
+	} else {
+		b.bigRisk(r, figures, lead)
 	}
-	b.say(sheet, cellName(2, rowBig), beside+"   "+risk.Note, styleKey{size: 13, middle: true})
 	b.try(b.f.SetRowHeight(sheet, rowBig, 48))
 	b.try(b.f.SetRowHeight(sheet, rowQuestion, b.heightOf(r.Question, 13)+10))
 	if r.VerdictText != "" {
@@ -168,6 +164,21 @@ func (b *book) answerHead(sheet string) {
 	} else {
 		b.across(sheet, rowVerdict, "The case states no limit, so there is no verdict.", styleKey{colour: grey})
 	}
+}
+
+// bigRisk writes the risk that the verdict rests on as the large figure, with
+// its interval and what stands behind it.
+func (b *book) bigRisk(r *reports.Report, figures place, lead string) {
+	sheet, risk := reports.PartAnswer, r.Figures[0]
+	cell := figures.t.Cell(lead, "estimate")
+	b.put(sheet, cellName(1, rowBig), cell,
+		b.style(styleKey{bold: true, size: 34, colour: blue, middle: true, format: numberFormat(figures.t.FormatOf(figures.t.Row(lead), figures.t.Column("estimate")), cell.Num)}))
+	b.formula(sheet, cellName(1, rowBig), b.fixed(sheet, "{figures:"+lead+":estimate}"))
+	beside := risk.Beside
+	if beside == "" {
+		beside = risk.Interval
+	}
+	b.say(sheet, cellName(2, rowBig), beside+"   "+risk.Note, styleKey{size: 13, middle: true})
 }
 
 func (b *book) heightOf(s string, size float64) float64 {

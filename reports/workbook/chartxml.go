@@ -237,8 +237,11 @@ func (d drawing) valueFormat() string {
 }
 
 // maximum fixes the end of the axis where bars carry intervals, which programs
-// leave out when they choose it.
+// leave out when they choose it, and where they would go beyond 100 %.
 func (d drawing) maximum() string {
+	if top := d.top(); d.chart.Percent && top > 0.8 && top <= 1 {
+		return `<c:max val="1"/>`
+	}
 	for _, s := range d.bars {
 		if s.up == nil || d.top() == 0 {
 			return ""
