@@ -15,7 +15,10 @@ type Chart struct {
 	X              string // key of the column along the axis
 	Percent        bool   // the vertical axis is a probability
 	Bars           bool   // one bar a row instead of lines over years
-	Series         []Series
+	// Across lays the bars on their side, those of a row over one another, to the
+	// left and right of 0: a tornado chart.
+	Across bool
+	Series []Series
 }
 
 // Series is one curve, band or set of bars.

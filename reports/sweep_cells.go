@@ -264,9 +264,9 @@ func influenceTable(id, title string, order []sweep.Influence, s *sweep.Result) 
 }
 
 func influenceChart(order []sweep.Influence, s *sweep.Result) Chart {
-	ch := Chart{ID: "influences", Title: "What moves the risk most", YTitle: "Risk", Table: "influences", X: "key", Percent: true, Bars: true,
-		Series: []Series{{Name: "With less", Role: Compared, Value: "less_risk"}, {Name: "With more", Role: Main, Value: "more_risk"}}}
-	ch.Alt = "Bars: the risk with less and with more of each input; the most by " + order[0].Key + ", " + PointsText(order[0].Span, s.Replicates) + " points."
+	ch := Chart{ID: "influences", Title: "What moves the risk most", YTitle: "Risk less that of the case, percentage points", Table: "influences", X: "key", Bars: true, Across: true,
+		Series: []Series{{Name: "With less", Role: Compared, Value: "less_difference"}, {Name: "With more", Role: Main, Value: "more_difference"}}}
+	ch.Alt = "Bars to the left and right of the case's risk: what it changes by with less and with more of each input; the most by " + order[0].Key + ", " + PointsText(order[0].Span, s.Replicates) + " points."
 	return ch
 }
 

@@ -152,7 +152,11 @@ func (d drawing) barsXML(b *strings.Builder, index *int) {
 	if len(d.bars) == 0 {
 		return
 	}
-	b.WriteString(`<c:barChart><c:barDir val="col"/><c:grouping val="clustered"/><c:varyColors val="0"/>`)
+	direction, overlap := "col", ""
+	if d.chart.Across {
+		direction, overlap = "bar", `<c:overlap val="100"/>`
+	}
+	b.WriteString(`<c:barChart><c:barDir val="` + direction + `"/><c:grouping val="clustered"/><c:varyColors val="0"/>`)
 	for _, s := range d.bars {
 		b.WriteString(s.head(*index, fillXML(looks[s.role])+`<a:ln><a:noFill/></a:ln>`) + `<c:invertIfNegative val="0"/>`)
 		if s.plus != "" {
@@ -166,7 +170,7 @@ func (d drawing) barsXML(b *strings.Builder, index *int) {
 	if len(d.labels) > 20 {
 		gap = 30
 	}
-	fmt.Fprintf(b, `<c:gapWidth val="%d"/>%s</c:barChart>`, gap, axisIDs)
+	fmt.Fprintf(b, `<c:gapWidth val="%d"/>%s%s</c:barChart>`, gap, overlap, axisIDs)
 }
 
 func (d drawing) linesXML(b *strings.Builder, index *int) {
@@ -185,7 +189,12 @@ func (d drawing) linesXML(b *strings.Builder, index *int) {
 
 func (d drawing) axesXML(b *strings.Builder) {
 	axisLine := `<c:spPr><a:ln w="9525"><a:solidFill><a:srgbClr val="7F7F7F"/></a:solidFill></a:ln></c:spPr>`
-	b.WriteString(`<c:catAx><c:axId val="111111111"/><c:scaling><c:orientation val="minMax"/></c:scaling><c:delete val="0"/><c:axPos val="b"/>`)
+	// Bars across: the first row on top, the values along the foot.
+	order, labels, foot, rotation, least, meets := "minMax", "b", "l", -5400000, `<c:min val="0"/>`, "autoZero"
+	if d.chart.Across {
+		order, labels, foot, rotation, least, meets = "maxMin", "l", "b", 0, "", "max"
+	}
+	fmt.Fprintf(b, `<c:catAx><c:axId val="111111111"/><c:scaling><c:orientation val="%s"/></c:scaling><c:delete val="0"/><c:axPos val="%s"/>`, order, labels)
 	b.WriteString(titleXML(d.chart.XTitle, axisFont, false, 0))
 	b.WriteString(`<c:numFmt formatCode="General" sourceLinked="0"/><c:majorTickMark val="none"/><c:minorTickMark val="none"/><c:tickLblPos val="low"/>`)
 	b.WriteString(axisLine + fontXML("c:txPr", axisFont, false, 0))
@@ -194,12 +203,12 @@ func (d drawing) axesXML(b *strings.Builder) {
 	if len(d.bars) == 0 {
 		between = "midCat"
 	}
-	b.WriteString(`<c:valAx><c:axId val="222222222"/><c:scaling><c:orientation val="minMax"/>` + d.maximum() + `<c:min val="0"/></c:scaling><c:delete val="0"/><c:axPos val="l"/>`)
+	b.WriteString(`<c:valAx><c:axId val="222222222"/><c:scaling><c:orientation val="minMax"/>` + d.maximum() + least + `</c:scaling><c:delete val="0"/><c:axPos val="` + foot + `"/>`)
 	b.WriteString(`<c:majorGridlines><c:spPr><a:ln w="6350"><a:solidFill><a:srgbClr val="` + lightGrey + `"/></a:solidFill></a:ln></c:spPr></c:majorGridlines>`)
-	b.WriteString(titleXML(d.chart.YTitle, axisFont, false, -5400000))
+	b.WriteString(titleXML(d.chart.YTitle, axisFont, false, rotation))
 	fmt.Fprintf(b, `<c:numFmt formatCode="%s" sourceLinked="0"/><c:majorTickMark val="out"/><c:minorTickMark val="none"/><c:tickLblPos val="nextTo"/>`, escaped(d.valueFormat()))
 	b.WriteString(axisLine + fontXML("c:txPr", axisFont, false, 0))
-	fmt.Fprintf(b, `<c:crossAx val="111111111"/><c:crosses val="autoZero"/><c:crossBetween val="%s"/></c:valAx>`, between)
+	fmt.Fprintf(b, `<c:crossAx val="111111111"/><c:crosses val="%s"/><c:crossBetween val="%s"/></c:valAx>`, meets, between)
 }
 
 // top is the highest point of the lines and bars, intervals included.
@@ -224,6 +233,8 @@ func (d drawing) top() float64 {
 func (d drawing) valueFormat() string {
 	top := d.top()
 	switch {
+	case d.chart.Across:
+		return "0.0"
 	case !d.chart.Percent:
 		return "#,##0"
 	case top > 0.05 || top == 0:
