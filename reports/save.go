@@ -81,9 +81,8 @@ func notWritten(path string, old bool, err error) error {
 // beside makes a new hidden file in the folder of path; several programs may do
 // so at once.
 func beside(path string) (string, file, error) {
-	folder, base := filepath.Split(path)
 	for n := 1; ; n++ {
-		name := folder + "." + base + ".part" + strconv.Itoa(n)
+		name := temporaryName(path, strconv.Itoa(n))
 		f, err := create(name)
 		if err == nil {
 			return name, f, nil
@@ -92,6 +91,12 @@ func beside(path string) (string, file, error) {
 			return "", nil, err
 		}
 	}
+}
+
+// temporaryName is the name of the n-th temporary file of path.
+func temporaryName(path, n string) string {
+	folder, base := filepath.Split(path)
+	return folder + "." + base + ".part" + n
 }
 
 func fill(f file, data []byte) error {

@@ -6,12 +6,14 @@ import (
 	"io/fs"
 	"os"
 	"path/filepath"
+	"time"
 )
 
 // CheckTarget makes sure, before a long run, that a report of the title given
 // can be written to path when it ends: the folder takes new files, and a file
 // that is there is this program's own report of the same case, or force is set.
-// It leaves nothing behind.
+// It leaves nothing behind, and clears away what a run that was killed while it
+// wrote left beside the file an hour ago or longer.
 func CheckTarget(path, title string, force bool) error {
 	ours, same, err := Owned(path, title)
 	switch {
@@ -23,7 +25,19 @@ func CheckTarget(path, title string, force bool) error {
 	case !force && !same:
 		return fmt.Errorf("%s is the report of another case; use --force to replace it, or --out for another name", path)
 	}
+	clearLeftovers(path)
 	return CheckFolder(filepath.Dir(path))
+}
+
+// clearLeftovers removes temporary files of path that no run can still be
+// writing. What cannot be removed is left: it does no harm.
+func clearLeftovers(path string) {
+	parts, _ := filepath.Glob(temporaryName(path, "*"))
+	for _, part := range parts {
+		if info, err := os.Lstat(part); err == nil && info.Mode().IsRegular() && time.Since(info.ModTime()) > time.Hour {
+			os.Remove(part)
+		}
+	}
 }
 
 // CheckFolder makes sure that files can be made in a folder.
