@@ -60,6 +60,9 @@ func (a *app) assess(o *assessOptions, args []string) error {
 	if o.workers < 0 {
 		return badInputf("--workers %d: give 1 or more", o.workers)
 	}
+	if o.failAboveLimit && !c.Question.Limit.Set {
+		return badInputf("--fail-above-limit: the case states no limit; give question.limit")
+	}
 	wish := assess.ExactIfCheap
 	switch {
 	case o.exact && o.noExact:

@@ -70,6 +70,14 @@ func (in *fitInput) run(a *app, path string) error {
 	if err := in.check(); err != nil {
 		return err
 	}
+	for _, out := range []string{in.write, in.json} {
+		if out != "" && out != "-" && sameFile(out, path) {
+			return badInputf("%s is the file of counts itself; give another name", out)
+		}
+	}
+	if in.write != "" && sameFile(in.write, in.json) {
+		return badInputf("%s cannot be both the case and the JSON file", in.write)
+	}
 	series, err := readCounts(path)
 	if err != nil {
 		return badInput{err}

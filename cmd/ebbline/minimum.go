@@ -60,6 +60,9 @@ func (a *app) minimum(o *minimumOptions, args []string) error {
 	}
 	opt := o.options("minimum", name, "-minimum", c)
 	opt.Restart = o.force && !o.resume
+	if err := notForeign(opt.Ledger); err != nil {
+		return err
+	}
 	ctx, stop := a.interruptible()
 	defer stop()
 	bar := &stages{w: a.errs, quiet: o.quiet}

@@ -121,16 +121,24 @@ func (a *app) sweep(o *sweepOptions, args []string) error {
 		return badInput{err}
 	}
 	book := reportPath(o.book, name)
-	if shards == 0 {
-		if err := o.checkFiles(book, c, name, "sweep.csv", "search.csv"); err != nil {
-			return err
+	if shards > 0 {
+		if o.book != "" || o.json != "" || o.csv != "" || o.figures != "" {
+			return badInputf("--shard %s: a shard writes no report; give --out, --json, --csv and --figures to `ebbline merge`", o.shard)
 		}
+	} else if err := o.checkFiles(book, c, name, "sweep.csv", "search.csv"); err != nil {
+		return err
+	}
+	if o.untilDecided && (study.Kind != sweep.Grid || !c.Question.Limit.Set) {
+		return badInputf("--until-decided needs a grid and a limit (question.limit): there is no verdict to wait for")
 	}
 	kind := ""
 	if study.Kind != sweep.Grid {
 		kind = "-each"
 	}
 	opt := o.options("sweep", name, kind, c)
+	if err := notForeign(opt.Ledger); err != nil {
+		return err
+	}
 	opt.Example, opt.Arguments, opt.Shard, opt.Shards = o.example, arguments, shard, shards
 	// Shards may share a folder: none of them throws away what others did.
 	opt.Restart = o.force && !o.resume && shards == 0
@@ -165,7 +173,7 @@ func (a *app) sweep(o *sweepOptions, args []string) error {
 	if err != nil {
 		return stopped(ctx, err, opt.Ledger, result.UnitsDone, result.Units)
 	}
-	if shards > 0 && !result.Whole() {
+	if shards > 0 {
 		if err := runner.Close(); err != nil {
 			return err
 		}

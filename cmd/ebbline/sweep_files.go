@@ -78,11 +78,29 @@ func (o *outputs) checkFiles(book string, c *pva.Case, name string, tables ...st
 		return nil
 	}
 	for _, f := range tables {
+		if o.json != "" && sameFile(o.json, filepath.Join(o.csv, f)) {
+			return badInputf("%s cannot be both the JSON file and a table of --csv", o.json)
+		}
 		if err := o.fresh(filepath.Join(o.csv, f), name); err != nil {
 			return err
 		}
 	}
 	return nil
+}
+
+// notForeign refuses a ledger folder that holds something else, so that nobody's
+// files are taken for a sweep's.
+func notForeign(dir string) error {
+	inside, err := os.ReadDir(dir)
+	if err != nil || len(inside) == 0 {
+		return nil // made by the ledger, or told by it
+	}
+	for _, e := range inside {
+		if e.Name() == "manifest.json" {
+			return nil
+		}
+	}
+	return badInputf("the folder %s holds other files and no ledger; name another with --ledger", dir)
 }
 
 // writeFiles writes the workbook, then JSON and CSV, each whole or not at all.
