@@ -72,7 +72,7 @@ func (a *app) assess(o *assessOptions, args []string) error {
 	case o.noExact:
 		wish = assess.ExactNever
 	}
-	book := reportPath(o.book, name)
+	book := reportPath(o.book, name, "")
 	if err := o.outputs.check(book, c, name); err != nil {
 		return err
 	}

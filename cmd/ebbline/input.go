@@ -141,12 +141,13 @@ func plainPathError(err error) error {
 
 // reportPath is where the workbook goes: --out, or beside the case under its
 // name; an example's report goes to the current folder. The report of a case
-// that is a workbook itself has "-report" in its name.
-func reportPath(out, caseName string) string {
+// that is a workbook itself has "-report" in its name, and every command but
+// assess its own kind, so that none overwrites the report of another.
+func reportPath(out, caseName, kind string) string {
 	if out != "" {
 		return out
 	}
-	stem := strings.TrimSuffix(caseName, filepath.Ext(caseName))
+	stem := strings.TrimSuffix(caseName, filepath.Ext(caseName)) + kind
 	if isWorkbook(caseName) {
 		stem += "-report"
 	}

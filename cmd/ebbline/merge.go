@@ -60,7 +60,7 @@ func (a *app) merge(o *sweepOptions, dirs []string) error {
 	if err != nil {
 		return badInput{fmt.Errorf("%s: %w", name, err)}
 	}
-	book := reportPath(o.book, name)
+	book := reportPath(o.book, name, "-sweep")
 	if err := o.checkFiles(book, c, name, "sweep.csv", "search.csv"); err != nil {
 		return err
 	}

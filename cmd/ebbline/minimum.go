@@ -54,7 +54,7 @@ func (a *app) minimum(o *minimumOptions, args []string) error {
 	if err != nil {
 		return badInput{fmt.Errorf("%s: %w", name, err)}
 	}
-	book := reportPath(o.book, name)
+	book := reportPath(o.book, name, "-minimum")
 	if err := o.checkFiles(book, c, name, "search.csv"); err != nil {
 		return err
 	}

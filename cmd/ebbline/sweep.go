@@ -120,7 +120,7 @@ func (a *app) sweep(o *sweepOptions, args []string) error {
 	if err != nil {
 		return badInput{err}
 	}
-	book := reportPath(o.book, name)
+	book := reportPath(o.book, name, map[bool]string{true: "-sweep", false: "-each"}[study.Kind == sweep.Grid])
 	if shards > 0 {
 		if o.book != "" || o.json != "" || o.csv != "" || o.figures != "" {
 			return badInputf("--shard %s: a shard writes no report; give --out, --json, --csv and --figures to `ebbline merge`", o.shard)
