@@ -128,7 +128,7 @@ func (r *Result) risk() *Risk {
 	switch {
 	case r.Counts < MinimumRisk:
 		out.Withheld = fmt.Sprintf("%d counts are too few for a risk (at least %d)", r.Counts, MinimumRisk)
-	case len(r.ZeroYears) > 0 && r.ZeroYears[len(r.ZeroYears)-1] > r.Last:
+	case len(r.ZeroYears) > 0 && r.ZeroYears[len(r.ZeroYears)-1] >= r.Last:
 		out.Withheld = "the last count is 0"
 	case r.Diagnostics.correlated():
 		out.Withheld = fmt.Sprintf("residuals too correlated: %s from one change to the next, and the formula takes the changes as independent", correlationText(r.Diagnostics.Autocorrelation))

@@ -91,7 +91,7 @@ func (r *Result) caseModel(o CaseOptions) (*Model, error) {
 		return nil, fmt.Errorf("counts: %d are too few for a case (at least %d)", r.Counts, MinimumRisk)
 	case math.Round(r.LastCount) < 1:
 		return nil, fmt.Errorf("counts: the last one, %g, is less than one unit; count in smaller units", r.LastCount)
-	case len(r.ZeroYears) > 0 && r.ZeroYears[len(r.ZeroYears)-1] > r.Last:
+	case len(r.ZeroYears) > 0 && r.ZeroYears[len(r.ZeroYears)-1] >= r.Last:
 		return nil, fmt.Errorf("counts: the last one is 0: there is no population to start from")
 	}
 	name := o.Model
