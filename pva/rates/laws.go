@@ -31,7 +31,7 @@ func (l LogNormal) Draw(e float64) float64 {
 
 // Factor is exp(Sigma e - Sigma^2/2), a factor of mean 1.
 func (l LogNormal) Factor(e float64) float64 {
-	return portable.Exp(float64(l.Sigma*e) - float64(l.Sigma*l.Sigma)/2)
+	return portable.Exp(float64(l.Sigma*e) - float64(float64(l.Sigma*l.Sigma)/2))
 }
 
 // Fraction is a fraction with a given mean and standard deviation between
@@ -55,7 +55,8 @@ func matchFraction(mean, sd float64) (Fraction, error) {
 	// For each V the U that gives the mean is found by bisection; the variance
 	// then grows with V, so that V is found by bisection too.
 	centre := func(v float64) float64 {
-		lo, hi := -40-8*v, 40+8*v
+		reach := 40 + float64(8*v)
+		lo, hi := -reach, reach
 		for i := 0; i < 200 && hi-lo > 1e-15*(1+math.Abs(lo)); i++ {
 			mid := (lo + hi) / 2
 			if m, _ := logitMoments(mid, v); m < mean {

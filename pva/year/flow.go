@@ -178,8 +178,9 @@ func (f *flow) lane(b *block, i, y int, t float64, events int, streams []rate, a
 				dt = math.Max(0.1/r, 1e-7)
 			}
 			// Streams move N by at most a hundredth of it in a sub-step.
-			if moved := streamed(streams, n); moved*dt > 0.01*float64(n)+1 {
-				dt = math.Max((0.01*float64(n)+1)/moved, 1e-7)
+			most := float64(0.01*float64(n)) + 1
+			if moved := streamed(streams, n); moved*dt > most {
+				dt = math.Max(most/moved, 1e-7)
 			}
 		}
 		if len(streams) == 0 {
@@ -226,7 +227,7 @@ func (f *flow) nearGuard(b *block, i int, streams []rate, step float64) bool {
 	if events > nearMost {
 		return false
 	}
-	reach := math.Abs(birth-death)*step + streamed(streams, n)*step + 6*math.Sqrt(events*step) + 1
+	reach := float64((math.Abs(birth-death)+streamed(streams, n))*step) + float64(6*math.Sqrt(events*step)) + 1
 	for k := range streams {
 		st := &streams[k]
 		for _, guard := range [...]float64{float64(st.stopBelow), float64(st.leave), st.onlyBelow} {
