@@ -7,7 +7,6 @@ import (
 	"ebbline/pva"
 	"ebbline/reports"
 	"ebbline/reports/tidy"
-	"ebbline/reports/workbook"
 )
 
 // outputs are the files a command writes.
@@ -64,47 +63,20 @@ func (o *outputs) fresh(path, caseName string) error {
 
 var csvFiles = []string{"years.csv", "inputs.csv"}
 
-// write writes the workbook, then JSON and CSV, each whole or not at all.
+// write writes the files of an assessment.
 func (o *outputs) write(a *app, r *reports.Report, result *pva.Assessment, book string) error {
-	data, err := workbook.Bytes(r)
+	doc, err := tidy.JSON(result, pva.Version, "assess")
 	if err != nil {
 		return err
 	}
-	if err := reports.Save(book, data); err != nil {
-		return err
-	}
-	if err := o.writeFigures(r); err != nil {
-		return err
-	}
-	if o.json != "" {
-		doc, err := tidy.JSON(result, pva.Version, "assess")
-		if err != nil {
+	tables := map[string][]byte{}
+	if o.csv != "" {
+		if tables["years.csv"], err = tidy.Years(result); err != nil {
 			return err
 		}
-		if o.json == "-" {
-			if _, err := a.out.Write(doc); err != nil {
-				return err
-			}
-		} else if err := reports.Save(o.json, doc); err != nil {
+		if tables["inputs.csv"], err = tidy.Inputs(reports.InputsTable(result.Case)); err != nil {
 			return err
 		}
 	}
-	if o.csv == "" {
-		return nil
-	}
-	if err := os.MkdirAll(o.csv, 0o777); err != nil {
-		return plainPathError(err)
-	}
-	years, err := tidy.Years(result)
-	if err != nil {
-		return err
-	}
-	inputs, err := tidy.Inputs(reports.InputsTable(result.Case))
-	if err != nil {
-		return err
-	}
-	if err := reports.Save(filepath.Join(o.csv, "years.csv"), years); err != nil {
-		return err
-	}
-	return reports.Save(filepath.Join(o.csv, "inputs.csv"), inputs)
+	return o.writeFiles(a, r, book, doc, tables)
 }

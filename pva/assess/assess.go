@@ -52,19 +52,11 @@ func Run(ctx context.Context, c *pva.Case, opt Options) (*pva.Assessment, error)
 	if err != nil {
 		return nil, err
 	}
-	models := make([]*rates.Model, len(set))
-	for i, v := range set {
-		models[i] = v.model
-	}
-	engine, err := year.New(c.Run.Seed, models...)
+	engine, err := engineOf(c, set)
 	if err != nil {
 		return nil, err
 	}
-	workers := opt.Workers
-	if workers <= 0 {
-		workers = runtime.NumCPU()
-	}
-	tallies, runErr := ensemble.Run(ctx, engine, ensemble.Plan{Replicates: c.Run.Replicates, Workers: workers, Progress: opt.Progress})
+	tallies, runErr := ensemble.Run(ctx, engine, ensemble.Plan{Replicates: c.Run.Replicates, Workers: opt.workers(), Progress: opt.Progress})
 	if tallies == nil {
 		return nil, runErr
 	}
@@ -86,6 +78,23 @@ func Run(ctx context.Context, c *pva.Case, opt Options) (*pva.Assessment, error)
 	decide(a)
 	a.Warnings = append(Warnings(c, set[0].model), runWarnings(a)...)
 	return a, runErr
+}
+
+// engineOf simulates the variants side by side.
+func engineOf(c *pva.Case, set []variant) (*year.Engine, error) {
+	models := make([]*rates.Model, len(set))
+	for i, v := range set {
+		models[i] = v.model
+	}
+	return year.New(c.Run.Seed, models...)
+}
+
+// workers is the number asked for, or one a core.
+func (o Options) workers() int {
+	if o.Workers > 0 {
+		return o.Workers
+	}
+	return runtime.NumCPU()
 }
 
 // role is what a variant is run for.

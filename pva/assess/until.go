@@ -3,14 +3,12 @@ package assess
 import (
 	"context"
 	"errors"
-	"runtime"
 
 	"ebbline/pva"
 	"ebbline/pva/ensemble"
 	"ebbline/pva/estimate"
 	"ebbline/pva/exact"
 	"ebbline/pva/rates"
-	"ebbline/pva/year"
 )
 
 // Settled is an assessment whose replicates were added until its verdict was
@@ -57,17 +55,9 @@ func UntilDecided(ctx context.Context, c *pva.Case, opt Options, most int64) (*S
 	if err != nil {
 		return nil, err
 	}
-	models := make([]*rates.Model, len(set))
-	for i, v := range set {
-		models[i] = v.model
-	}
-	engine, err := year.New(c.Run.Seed, models...)
+	engine, err := engineOf(c, set)
 	if err != nil {
 		return nil, err
-	}
-	workers := opt.Workers
-	if workers <= 0 {
-		workers = runtime.NumCPU()
 	}
 	s := &Settled{}
 	var tallies []*pva.Tally
@@ -76,7 +66,7 @@ func UntilDecided(ctx context.Context, c *pva.Case, opt Options, most int64) (*S
 	batch := blocks(c.Run.Replicates)
 	for {
 		asked = n + batch
-		plan := ensemble.Plan{First: n, Replicates: batch, Workers: workers}
+		plan := ensemble.Plan{First: n, Replicates: batch, Workers: opt.workers()}
 		if opt.Progress != nil {
 			before := n
 			plan.Progress = func(done int64) { opt.Progress(before + done) }
