@@ -3,6 +3,7 @@ package reports
 import (
 	"fmt"
 	"math"
+	"slices"
 
 	"ebbline/pva"
 	"ebbline/pva/sweep"
@@ -62,14 +63,7 @@ func BuildSweep(s *sweep.Result, largest *sweep.Crossing, meta Meta) *Report {
 // BuildMinimum states a minimum viable size as a report.
 func BuildMinimum(s *sweep.Study, q *sweep.Sizes, l *sweep.Crossing, meta Meta) *Report {
 	c := s.Base
-	at := l.Points[len(l.Points)-1]
-	if l.Found {
-		for _, p := range l.Points {
-			if p.Value == l.Value {
-				at = p
-			}
-		}
-	}
+	at := l.At()
 	r := sweepReport(s, meta, at.Risk, at.Verdict, at.Risk.Of)
 	r.Question = fmt.Sprintf("What is the smallest %s whose risk of falling to %s or fewer %s within %s is at most %s?", sizeWords(q), Plain(c.Question.Threshold), c.Counts,
 		counted(int64(q.Horizon), c.TimeUnit), percentOf(q.Risk))
@@ -195,7 +189,10 @@ func crossingNumbers(l *sweep.Crossing, label string) []Number {
 		return f.Show(v)
 	}
 	ends.Text = show(low, "the smallest") + " to " + show(high, "the largest")
-	if low == high {
+	switch {
+	case (math.IsNaN(low) || math.IsNaN(high)) && l.Settled():
+		ends.Text, ends.Note = "none", "of those looked at"
+	case low == high:
 		ends.Text = "none"
 		ends.Note = "every value on one side is shown within the limit, every one on the other above it"
 	}
@@ -265,10 +262,16 @@ func traceTable(l *sweep.Crossing, title string) *Table {
 	b := newTable("trace", title).column("value", sentence(l.Key), l.Unit, Format{Kind: General}).column("estimate", "Risk", "", pct).column("low", "Low", "", pct).column("high", "High", "", pct).
 		column("count", "Fallen", "replicates", Format{Kind: Counts}).column("of", "Of", "replicates", Format{Kind: Counts}).column("verdict", "Verdict", "", Format{}).column("rests", "Rests on", "", Format{})
 	for i, p := range l.Points {
-		cells := map[string]Cell{"value": num(p.Value), "estimate": num(p.Risk.Estimate), "low": num(p.Risk.Low), "high": num(p.Risk.High), "verdict": text(string(p.Verdict)), "rests": text("replicates")}
-		if p.Exact != nil {
+		cells := map[string]Cell{"value": num(p.Value), "verdict": text(string(p.Verdict)), "rests": text("replicates")}
+		if p.Unreachable == "" {
+			cells["estimate"], cells["low"], cells["high"] = num(p.Risk.Estimate), num(p.Risk.Low), num(p.Risk.High)
+		}
+		switch {
+		case p.Unreachable != "":
+			cells["verdict"], cells["rests"] = text("not viable"), text(p.Unreachable)
+		case p.Exact != nil:
 			cells["rests"] = text("exact answer")
-		} else {
+		default:
 			cells["count"], cells["of"] = num(float64(p.Risk.Count)), num(float64(p.Risk.Of))
 			cells["estimate"] = cells["estimate"].by("{count}/{of}", float64(p.Risk.Count)/float64(p.Risk.Of))
 		}
@@ -283,7 +286,8 @@ func traceChart(l *sweep.Crossing, title, axis string, limit float64) Chart {
 	if !math.IsNaN(limit) {
 		ch.Series = append(ch.Series, Series{Name: "Limit, " + percentOf(limit), Role: LimitLine, Constant: "{figures:limit:estimate}", Level: limit})
 	}
-	first, last := l.Points[0], l.Points[len(l.Points)-1]
+	known := slices.DeleteFunc(slices.Clone(l.Points), func(p *sweep.Point) bool { return p.Unreachable != "" })
+	first, last := known[0], known[len(known)-1]
 	ch.Alt = "Line with an interval band: the risk is " + Percent(first.Risk.Estimate, first.Risk.Of) + " at " + Plain(first.Value) + " and " + Percent(last.Risk.Estimate, last.Risk.Of) + " at " + Plain(last.Value) + "."
 	return ch
 }

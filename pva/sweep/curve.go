@@ -27,8 +27,10 @@ type axis struct {
 	limit           float64
 	confidence      float64
 	tag             string // tells axes of one ledger apart
-	set             func(x float64) []pva.Setting
-	strict          bool
+	horizon         int
+	// model is the case at a value as formulas; or why it has none, which counts
+	// as above the limit.
+	model func(x float64) (m *rates.Model, unreachable string, err error)
 }
 
 // Point is the risk at one value of an axis, and what it rests on.
@@ -37,6 +39,9 @@ type Point struct {
 	Risk    pva.Proportion // Low and High hold at every number of replicates at once
 	Exact   *pva.ExactAnswer
 	Verdict pva.Verdict
+	// Unreachable is why there is no such case, "" if there is one. Its Risk then
+	// is no estimate: such a value counts as above the limit, whatever that is.
+	Unreachable string
 
 	model *rates.Model
 	words []uint64 // fallen or not, a bit a replicate
@@ -67,13 +72,17 @@ func (c *curve) look(ctx context.Context, values []float64, n int64) error {
 		if c.at(x) != nil {
 			continue
 		}
-		m, err := modelOf(c.r.study.Base, c.r.study.base, c.a.set(x), c.a.strict)
+		m, unreachable, err := c.a.model(x)
 		if err != nil {
 			return fmt.Errorf("%s = %s: %w", c.a.key, pva.Num(x).Text, err)
 		}
-		p := &Point{Value: x, model: m}
-		fresh = append(fresh, p)
+		p := &Point{Value: x, model: m, Unreachable: unreachable}
 		c.insert(p)
+		if unreachable != "" {
+			p.Risk, p.Verdict = pva.Proportion{Estimate: 1, Low: 1, High: 1}, pva.AboveLimit
+			continue
+		}
+		fresh = append(fresh, p)
 	}
 	if c.exact {
 		err := c.r.each(ctx, len(fresh), func(ctx context.Context, i int) error { return fresh[i].solve(ctx) })

@@ -9,6 +9,7 @@ import (
 
 	"ebbline/pva"
 	"ebbline/pva/estimate"
+	"ebbline/pva/rates"
 )
 
 // Largest searches for the largest value of a grid's key at which the risk is
@@ -21,7 +22,11 @@ func (r *Runner) Largest(ctx context.Context, grid *Result, opt SearchOptions) (
 	dim := r.study.Dimensions[d]
 	a := axis{key: dim.Key, path: dim.Path, unit: dim.Unit, tag: "largest", whole: wholeBy(dim), rising: true,
 		from: slices.Min(dim.Values), to: slices.Max(dim.Values), confidence: r.study.Base.Question.Confidence,
-		set: func(x float64) []pva.Setting { return []pva.Setting{{Path: dim.Path, Value: pva.Num(x)}} }}
+		horizon: r.study.Base.Question.Horizon,
+		model: func(x float64) (*rates.Model, string, error) {
+			m, err := modelOf(r.study.Base, r.study.base, []pva.Setting{{Path: dim.Path, Value: pva.Num(x)}}, false)
+			return m, "", err
+		}}
 	none := func(reason string) (*Crossing, error) {
 		return &Crossing{Key: a.key, Path: a.path, Unit: a.unit, From: a.from, To: a.to, Rising: true, Confidence: a.confidence,
 			Horizon: r.study.Base.Question.Horizon, Value: math.NaN(), Safe: math.NaN(), Other: math.NaN(), Reason: reason}, nil

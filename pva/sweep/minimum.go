@@ -20,6 +20,9 @@ type Sizes struct {
 	// capacity, the resting place of the mean path if only a scale is given, or
 	// the ceiling; 0 where only the start is varied.
 	Capacity float64
+
+	crowded bool // crowding holds the population, not a ceiling alone
+	solved  bool // only scales are stated: those of a size are solved for
 }
 
 // NewMinimum is the question of a case's [minimum] table. It fills in what the
@@ -45,6 +48,9 @@ func NewMinimum(c *pva.Case) (*Study, *Sizes, error) {
 			return nil, nil, err
 		}
 		q.Capacity = k
+		births, deaths := c.Births.Crowding, c.Deaths.Crowding
+		q.crowded = births.Form != "none" || deaths.Form != "none"
+		q.solved = q.crowded && !births.Capacity.Set && !deaths.Capacity.Set
 	}
 	if q.Vary == "both" && c.Start.Abundance <= 0 {
 		return nil, nil, errors.New("minimum.vary: \"both\" scales the capacity with the start, which is 0 in the case; give a start.abundance above 0")
@@ -60,7 +66,7 @@ func NewMinimum(c *pva.Case) (*Study, *Sizes, error) {
 		return nil, nil, fmt.Errorf("minimum.to: %v is not above the smallest size tried, %v; give a larger one", q.To, q.From)
 	}
 	for _, x := range []float64{q.From, q.To} {
-		if _, err := modelOf(c, s.base, q.settings(c, x), true); err != nil {
+		if _, _, err := q.model(c, s.base, x); err != nil {
 			return nil, nil, fmt.Errorf("size %v: %w", x, err)
 		}
 	}
@@ -89,53 +95,6 @@ func capacityOf(m *rates.Model) (float64, error) {
 	return 0, errors.New("minimum.vary: the case has neither crowding nor a ceiling, so that there is no capacity to vary; vary = \"start\"")
 }
 
-// resting is where the mean path rests without takes, stocking and ceiling: the
-// largest resting place that it returns to; 0 if there is none.
-func resting(m *rates.Model) float64 {
-	bare := *m
-	c := *m.Case
-	c.Harvest, c.Stocking, c.Ceiling = nil, nil, pva.Optional{}
-	bare.Case, bare.Takes = &c, nil
-	k := 0.0
-	for _, e := range bare.Equilibria() {
-		if e.Stable {
-			k = math.Max(k, e.N)
-		}
-	}
-	return k
-}
-
-// settings makes the case one of a size.
-func (q *Sizes) settings(c *pva.Case, size float64) []pva.Setting {
-	out := []pva.Setting{{Path: "question.horizon", Value: pva.Num(float64(q.Horizon))}}
-	put := func(path string, v float64) { out = append(out, pva.Setting{Path: path, Value: pva.Num(v)}) }
-	times := 1.0
-	switch q.Vary {
-	case "start":
-		put("start.abundance", size)
-		return out
-	case "capacity":
-		times = size / q.Capacity
-	case "both":
-		put("start.abundance", size)
-		times = size / c.Start.Abundance
-	}
-	scale := func(path string, v pva.Optional) {
-		if v.Set {
-			put(path, v.Value*times)
-		}
-	}
-	for i, crowding := range []pva.Crowding{c.Births.Crowding, c.Deaths.Crowding} {
-		if crowding.Form != "none" {
-			side := []string{"births", "deaths"}[i]
-			scale(side+".crowding.scale", crowding.Scale)
-			scale(side+".crowding.capacity", crowding.Capacity)
-		}
-	}
-	scale("ceiling.abundance", c.Ceiling)
-	return out
-}
-
 // firstSizes is how many sizes are looked at before the search narrows, evenly
 // spaced on a scale of ratios.
 const firstSizes = 9
@@ -143,9 +102,9 @@ const firstSizes = 9
 // Smallest searches for the smallest viable size.
 func (r *Runner) Smallest(ctx context.Context, q *Sizes, opt SearchOptions) (*Crossing, error) {
 	c := r.study.Base
-	a := axis{key: "size", path: "size", unit: "counting units", tag: "size", whole: true, rising: false, strict: true,
+	a := axis{key: "size", path: "size", unit: "counting units", tag: "size", whole: true, rising: false, horizon: q.Horizon,
 		from: q.From, to: q.To, limit: q.Risk, confidence: c.Question.Confidence,
-		set: func(x float64) []pva.Setting { return q.settings(c, x) }}
+		model: func(x float64) (*rates.Model, string, error) { return q.model(c, r.study.base, x) }}
 	last := 0.0
 	for i := range firstSizes {
 		x := math.Round(q.From * math.Pow(q.To/q.From, float64(i)/(firstSizes-1)))
@@ -159,8 +118,13 @@ func (r *Runner) Smallest(ctx context.Context, q *Sizes, opt SearchOptions) (*Cr
 		return nil, err
 	}
 	x := func(v float64) string { return pva.Num(v).Text }
+	if out.At() == nil {
+		return nil, fmt.Errorf("minimum: the population cannot rest at any of the sizes looked at, %s to %s: births do not balance deaths there; look at larger ones (minimum.to), or vary the start", x(q.From), x(q.To))
+	}
 	biggest := out.Points[len(out.Points)-1]
 	switch {
+	case !out.Found && biggest.Unreachable != "":
+		out.Reason = "none up to " + x(q.To) + ", where " + biggest.Unreachable
 	case !out.Found && biggest.Verdict == pva.AboveLimit:
 		out.Reason = "none up to " + x(q.To)
 	case !out.Found:

@@ -65,6 +65,32 @@ func (c *Crossing) High() float64 {
 	return c.Safe
 }
 
+// At is the point of the answer; without one, the last that has a risk. There is
+// always one that has.
+func (c *Crossing) At() *Point {
+	var last *Point
+	for _, p := range c.Points {
+		if c.Found && p.Value == c.Value {
+			return p
+		}
+		if p.Unreachable == "" {
+			last = p
+		}
+	}
+	return last
+}
+
+// Settled says that no value looked at is left undecided: what is not shown to
+// be within the limit is shown to be above, or all of them are within.
+func (c *Crossing) Settled() bool {
+	for _, p := range c.Points {
+		if p.Verdict == pva.Undecided {
+			return false
+		}
+	}
+	return true
+}
+
 // Break is a step of a curve that goes the wrong way: the risk at Riskier, which
 // should be the safer of the two, is above that at Safer by Difference.
 type Break struct {
@@ -253,7 +279,7 @@ func (c *curve) share(p, q *Point) float64 {
 func (c *curve) answer(ctx context.Context, level int64) (*Crossing, error) {
 	a := c.a
 	out := &Crossing{Key: a.key, Path: a.path, Unit: a.unit, Whole: a.whole, Rising: a.rising, From: a.from, To: a.to, Limit: a.limit, Confidence: a.confidence,
-		Horizon: c.points[0].model.Case.Question.Horizon, Safe: math.NaN(), Other: math.NaN(), Value: math.NaN()}
+		Horizon: a.horizon, Safe: math.NaN(), Other: math.NaN(), Value: math.NaN()}
 	x, found := c.estimated()
 	bounds := func() {
 		good, bad := c.bracket()
@@ -333,7 +359,7 @@ func (c *curve) breaks() []Break {
 			continue
 		}
 		var d pva.Difference
-		if p.Exact == nil && riskiest.Exact == nil {
+		if p.n > 0 && riskiest.n > 0 {
 			d = difference(riskiest, p, level)
 		} else {
 			d = pva.Difference{Estimate: riskiest.Risk.Estimate - p.Risk.Estimate, Low: riskiest.Risk.Low - p.Risk.High, High: riskiest.Risk.High - p.Risk.Low}

@@ -104,7 +104,7 @@ func TestSizes(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	m, err := modelOf(c, s.base, q.settings(c, 90), true) // one and a half times the start of 60
+	m, _, err := q.model(c, s.base, 90) // one and a half times the start of 60
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -115,7 +115,7 @@ func TestSizes(t *testing.T) {
 	if s, q, err = NewMinimum(c); err != nil || q.Capacity != 120 || q.From != 11 || q.To != 12000 {
 		t.Fatal(q, err)
 	}
-	if m, err = modelOf(c, s.base, q.settings(c, 60), true); err != nil || m.Case.Start.Abundance != 60 || m.Case.Births.Crowding.Capacity.Value != 60 {
+	if m, _, err = q.model(c, s.base, 60); err != nil || m.Case.Start.Abundance != 60 || m.Case.Births.Crowding.Capacity.Value != 60 {
 		t.Error(err)
 	}
 	// A scale alone: the capacity is where the mean path rests. Births

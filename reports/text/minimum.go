@@ -28,6 +28,10 @@ func Minimum(s *sweep.Study, q *sweep.Sizes, l *sweep.Crossing, file string) str
 		points = kept
 	}
 	for _, p := range points {
+		if p.Unreachable != "" {
+			rows = append(rows, []string{reports.Plain(p.Value), "none", "", "cannot rest there", "not viable"})
+			continue
+		}
 		on, digits := countOf(p.Risk.Of, "replicate"), p.Risk.Of
 		interval := strings.TrimSuffix(reports.PercentRange(p.Risk.Low, p.Risk.High, digits), " %")
 		if p.Exact != nil {

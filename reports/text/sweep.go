@@ -198,6 +198,8 @@ func between(l *sweep.Crossing, confidence float64) string {
 	switch {
 	case !math.IsNaN(low) && !math.IsNaN(high) && low == high:
 		return ", and no other value is in doubt" + at
+	case (math.IsNaN(low) || math.IsNaN(high)) && l.Settled():
+		return ", and no value looked at is left undecided" + at
 	case math.IsNaN(low) && math.IsNaN(high):
 		return "; the verdict is undecided" + at + " for all values looked at"
 	case math.IsNaN(low):

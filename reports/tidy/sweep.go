@@ -52,6 +52,8 @@ type pointRow struct {
 	Risk    *proportion `json:"risk"`
 	Exact   bool        `json:"exact"`
 	Verdict string      `json:"verdict"`
+	// Unreachable is why there is no such case and no risk.
+	Unreachable string `json:"unreachable,omitempty"`
 }
 
 type influenceRow struct {
@@ -189,7 +191,11 @@ func cellOf(s *sweep.Study, i int, o *sweep.Outcome) sweepCell {
 
 func (d *sweepDocument) search(l *sweep.Crossing) {
 	for _, p := range l.Points {
-		d.Trace = append(d.Trace, pointRow{number(p.Value), pointRisk(p.Risk, p.Exact), p.Exact != nil, string(p.Verdict)})
+		row := pointRow{Value: number(p.Value), Exact: p.Exact != nil, Verdict: string(p.Verdict), Unreachable: p.Unreachable}
+		if p.Unreachable == "" {
+			row.Risk = pointRisk(p.Risk, p.Exact)
+		}
+		d.Trace = append(d.Trace, row)
 	}
 	monotone := len(l.Breaks) == 0
 	if len(l.Points) > 0 {
@@ -306,6 +312,10 @@ func SweepCSV(r *sweep.Result) ([]byte, error) {
 func TraceCSV(l *sweep.Crossing) ([]byte, error) {
 	rows := [][]string{{guard(l.Key), "replicates", "fallen_count", "risk", "low", "high", "exact", "verdict"}}
 	for _, p := range l.Points {
+		if p.Unreachable != "" { // nothing was run
+			rows = append(rows, []string{num(p.Value), "0", "0", "", "", "", "false", string(p.Verdict)})
+			continue
+		}
 		rows = append(rows, []string{num(p.Value), strconv.FormatInt(p.Risk.Of, 10), strconv.FormatInt(p.Risk.Count, 10), num(p.Risk.Estimate), num(p.Risk.Low), num(p.Risk.High),
 			strconv.FormatBool(p.Exact != nil), string(p.Verdict)})
 	}

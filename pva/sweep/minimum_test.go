@@ -1,0 +1,105 @@
+package sweep
+
+import (
+	"context"
+	"math"
+	"testing"
+
+	"ebbline/pva"
+	"ebbline/pva/rates"
+)
+
+// scarce is an invented population with scarcity at small numbers, whose births
+// crowd by a stated scale.
+func scarce(t testing.TB, more ...any) *pva.Case {
+	return caseOf(t, append([]any{"case.title", "an invented moor", "question.threshold", 5, "question.horizon", 20, "question.limit", .1, "start.abundance", 100,
+		"births.breeding", "pulse", "births.rate", .9, "births.crowding.form", "ricker", "births.crowding.scale", 200, "births.scarcity.form", "saturating", "births.scarcity.half_at", 20,
+		"deaths.fraction", .25, "run.replicates", 500, "run.seed", 5}, more...)...)
+}
+
+// TestCapacityIsWhereThePathRests: whatever makes the capacity, the case of a
+// size is one whose mean year leads from that size to itself, and from either
+// side towards it. The mean year is iterated here; no formula of the search is
+// used.
+func TestCapacityIsWhereThePathRests(t *testing.T) {
+	both := []any{"deaths.crowding.form", "linear", "deaths.crowding.scale", 900}
+	flow := []any{"births.breeding", "flow", "deaths.fraction", .25}
+	for name, c := range map[string]*pva.Case{
+		"scale on births":    scarce(t, "minimum.vary", "capacity"),
+		"scale on both":      scarce(t, append(both, "minimum.vary", "capacity")...),
+		"start and scale":    scarce(t, append(both, "minimum.vary", "both")...),
+		"flow, scale":        scarce(t, append(flow, "minimum.vary", "capacity")...),
+		"a capacity":         marsh(t, "minimum.vary", "capacity", "catastrophe.1.chance", 0),
+		"a capacity and all": marsh(t, "minimum.vary", "both", "catastrophe.1.chance", 0),
+	} {
+		s, q, err := NewMinimum(c)
+		if err != nil {
+			t.Fatal(name, err)
+		}
+		seen := 0
+		for _, size := range []float64{6, 12, 25, 50, 71, 100, 400, 3000} {
+			m, unreachable, err := q.model(c, s.base, size)
+			if err != nil {
+				t.Fatal(name, err)
+			}
+			if unreachable != "" {
+				if size > 71 {
+					t.Errorf("%s: no case of %v: %s", name, size, unreachable)
+				}
+				continue
+			}
+			seen++
+			want := q.restOf(c, size)
+			if q.Vary == "both" && m.Case.Start.Abundance != size {
+				t.Errorf("%s: starts at %v, want %v", name, m.Case.Start.Abundance, size)
+			}
+			for _, from := range []float64{.97, 1, 1.03} {
+				if n := iterated(m, from*want); math.Abs(n-want) > 1e-4*want {
+					t.Errorf("%s: size %v: the path from %v rests at %v, want %v", name, size, from*want, n, want)
+				}
+			}
+		}
+		if seen < 4 {
+			t.Errorf("%s: only %d sizes have a case", name, seen)
+		}
+	}
+}
+
+// iterated follows the mean year without takes for long.
+func iterated(m *rates.Model, n float64) float64 {
+	m = bare(m)
+	for range 3000 {
+		n = m.MeanYear(n)
+	}
+	return n
+}
+
+// TestUnreachableSizesAreNotViable: below the size at which scarcity leaves
+// births behind deaths there is no such population, and the search goes on.
+func TestUnreachableSizesAreNotViable(t *testing.T) {
+	c := scarce(t, "minimum.vary", "both", "minimum.from", 2, "minimum.to", 600, "minimum.risk", .05)
+	s, q, err := NewMinimum(c)
+	if err != nil {
+		t.Fatal(err)
+	}
+	got, err := open(t, s, Options{}).Smallest(context.Background(), q, SearchOptions{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if !got.Found || !(got.Value > 10) || got.Value >= 600 || got.Points[0].Unreachable == "" || got.At().Unreachable != "" || got.Risk.Estimate > .05 {
+		t.Errorf("%+v", got)
+	}
+	for i, p := range got.Points[1:] {
+		if p.Unreachable != "" && got.Points[i].Unreachable == "" {
+			t.Errorf("%v has no case, and %v has one", p.Value, got.Points[i].Value)
+		}
+	}
+	// Without births enough at any size there is nothing to search.
+	c = scarce(t, "minimum.vary", "capacity", "minimum.from", 2, "minimum.to", 12)
+	if s, q, err = NewMinimum(c); err != nil {
+		t.Fatal(err)
+	}
+	if got, err := open(t, s, Options{}).Smallest(context.Background(), q, SearchOptions{}); err == nil {
+		t.Errorf("found %+v", got)
+	}
+}
