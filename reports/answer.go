@@ -70,7 +70,7 @@ func figures(a *pva.Assessment) []Figure {
 	risk := proportionFigure("risk", withTake(a), o.Risk)
 	risk.Note = level + " interval, " + counted(o.Risk.Of, "replicate")
 	if a.Sequential {
-		risk.Note = level + " interval that for the risks holds however often one looks (a confidence sequence), and for differences and extinction is of a single look; " + counted(o.Risk.Of, "replicate")
+		risk.Note = level + " interval that holds however often one looks (a confidence sequence); " + counted(o.Risk.Of, "replicate")
 	}
 	u := a.Uncertainty
 	if u != nil {

@@ -10,9 +10,13 @@ import (
 
 // optionsPart sets the case, its options and the baseline side by side.
 func optionsPart(a *pva.Assessment, s scores) Part {
+	interval := "Newcombe's paired interval (1998)"
+	if a.Sequential {
+		interval = "an interval that holds at every look (two confidence sequences)"
+	}
 	return Part{Name: PartOptions,
 		Lead: "Every row is assessed on the same replicates, so that differences between rows are sharper than their intervals suggest. " +
-			"The difference is the row's risk minus the case's, in percentage points, with Newcombe's paired interval (1998).",
+			"The difference is the row's risk minus the case's, in percentage points, with " + interval + ".",
 		Tables: []*Table{optionsTable(a, s)}, Charts: []Chart{optionsChart(a)}}
 }
 

@@ -130,10 +130,17 @@ func pairsTable(a *pva.Assessment, s scores) *Table {
 	d := *a.Added
 	q := newPaired(a.Outcome.Risk, a.Baseline.Risk, d)
 	cnt, pts := Format{Kind: Counts}, Format{Points, tableDigits(d.Of) + 1}
-	b := newTable("pairs", "How the interval of the added risk is made (Newcombe 1998, method 10)").
+	how := "Newcombe 1998, method 10"
+	if a.Sequential {
+		how = "the two shares that fell in one only, each with a confidence sequence at half the doubt"
+	}
+	b := newTable("pairs", "How the interval of the added risk is made ("+how+")").
 		column("both", "Fell in both", "replicates", cnt).column("only_with", "Only with the take", "replicates", cnt).
-		column("only_without", "Only without", "replicates", cnt).column("neither", "In neither", "replicates", cnt).
-		column("phi", "Correlation phi", "", Format{Decimal, 6}).column("estimate", "The take adds", "points", pts).
+		column("only_without", "Only without", "replicates", cnt).column("neither", "In neither", "replicates", cnt)
+	if !a.Sequential {
+		b.column("phi", "Correlation phi", "", Format{Decimal, 6})
+	}
+	b.column("estimate", "The take adds", "points", pts).
 		column("low", "Low", "points", pts).column("high", "High", "points", pts)
 	low, high := num(100*d.Low), num(100*d.High)
 	if q.explains(d, s) {

@@ -28,9 +28,17 @@ func riskPart(a *pva.Assessment, s scores) Part {
 	return Part{
 		Name: PartRisk,
 		Lead: "Fallen: the share of replicates with " + fallenCount(c) + " at that or an earlier census. None left: no " + c.Counts +
-			" at that very census. Estimates are count / replicates, intervals Wilson's (1927).",
+			" at that very census. Estimates are count / replicates, intervals " + intervalsOf(a) + ".",
 		Tables: []*Table{settingsTable(a, s), yearsTable(a, s)},
 	}
+}
+
+// intervalsOf names the method behind the intervals of probabilities.
+func intervalsOf(a *pva.Assessment) string {
+	if a.Sequential {
+		return "those of confidence sequences, which hold at every look (Robbins 1970, Howard et al. 2021)"
+	}
+	return "Wilson's (1927)"
 }
 
 func yearsTable(a *pva.Assessment, s scores) *Table {

@@ -12,9 +12,9 @@ import (
 )
 
 // Settled is an assessment whose replicates were added until its verdict was
-// settled. The intervals of its risks, and of those of its baseline and options,
-// are of a confidence sequence (estimate.Sequence): they hold however often one
-// looks and whenever one stops. Intervals by year stay those of a single look.
+// settled. The intervals of its probabilities, and of differences of risks, are
+// of confidence sequences (estimate.Sequence): each holds however often one looks
+// and whenever one stops.
 type Settled struct {
 	*pva.Assessment
 	Looks []Look
@@ -123,9 +123,7 @@ func known(e *pva.ExactAnswer) bool { return e != nil && e.Reason == "" }
 func (s *Settled) state(c *pva.Case, set []variant, tallies []*pva.Tally, first *pva.Assessment) *pva.Assessment {
 	a := gather(c, set, tallies)
 	a.Substeps = rates.BoundSubsteps(set[0].model)
-	for _, o := range outcomes(a) {
-		o.Risk = sequence(o.Risk, c.Question.Confidence)
-	}
+	atEveryLook(a)
 	if first != nil {
 		a.Exact, a.BaselineExact = first.Exact, first.BaselineExact
 		held := func(p pva.Proportion, e *pva.ExactAnswer, m *rates.Model) float64 {
@@ -160,19 +158,37 @@ func (s *Settled) state(c *pva.Case, set []variant, tallies []*pva.Tally, first 
 	}
 	a.Closed = exact.ClosedForms(set[0].model, risk, name)
 	decide(a)
+	if a.ToDecide != 0 {
+		a.ToDecide = estimate.ToDecideAtEveryLook(c.Question.Limit, a.Outcome.Risk, c.Question.Confidence)
+	}
 	s.Decided = a.Verdict != pva.Undecided
 	return a
 }
 
-func outcomes(a *pva.Assessment) []*pva.Outcome {
-	out := []*pva.Outcome{a.Outcome}
+// atEveryLook gives an assessment the intervals of confidence sequences.
+func atEveryLook(a *pva.Assessment) {
+	level := a.Case.Question.Confidence
+	difference := func(d *pva.Difference) {
+		if d != nil {
+			*d = estimate.PairedAtEveryLook(*d, level)
+		}
+	}
+	estimate.AtEveryLook(a.Outcome, level)
 	if a.Baseline != nil {
-		out = append(out, a.Baseline)
+		estimate.AtEveryLook(a.Baseline, level)
 	}
+	difference(a.Added)
 	for i := range a.Options {
-		out = append(out, a.Options[i].Outcome)
+		o := &a.Options[i]
+		estimate.AtEveryLook(o.Outcome, level)
+		difference(&o.Difference)
+		difference(o.Added)
 	}
-	return out
+	for i := range a.Drivers {
+		d := &a.Drivers[i]
+		d.Risk = sequence(d.Risk, level)
+		difference(&d.Difference)
+	}
 }
 
 // sequence is a proportion with the interval of a confidence sequence.

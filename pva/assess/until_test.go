@@ -105,3 +105,42 @@ func TestUntilDecides(t *testing.T) {
 		t.Error(s, err)
 	}
 }
+
+// TestUntilEveryInterval: not the risk's interval alone but those of the added
+// risk, of options, of what drives the risk and of extinction hold at every
+// look, so that all are wider than those of an ordinary run of as many.
+func TestUntilEveryInterval(t *testing.T) {
+	c := built(t, map[string]any{"question.threshold": 3, "question.horizon": 3, "question.limit": .4, "start.abundance": 9,
+		"births.breeding": "pulse", "births.rate": .3, "births.year_sd": .2, "deaths.fraction": .3,
+		"harvest.1.name": "control", "harvest.1.rule": "constant", "harvest.1.take": 1, "harvest.1.when": "end",
+		"option.1.name": "two", "option.1.set.harvest.1.take": 2, "run.seed": 3, "run.replicates": 640})
+	s, err := UntilDecided(context.Background(), c, Options{Exact: ExactNever}, 640)
+	if err != nil {
+		t.Fatal(err)
+	}
+	one, err := Run(context.Background(), c, Options{Exact: ExactNever})
+	if err != nil || one.Replicates != s.Replicates {
+		t.Fatal(err, one.Replicates, s.Replicates)
+	}
+	wider := func(what string, low, high, otherLow, otherHigh float64) {
+		if !(low < otherLow && high > otherHigh) {
+			t.Errorf("%s: %v to %v, a single look's %v to %v", what, low, high, otherLow, otherHigh)
+		}
+	}
+	difference := func(what string, a, b pva.Difference) {
+		if a.Estimate != b.Estimate {
+			t.Errorf("%s: %v, %v", what, a.Estimate, b.Estimate)
+		}
+		wider(what, a.Low, a.High, b.Low, b.High)
+	}
+	wider("extinction", s.Outcome.Extinction.Low, s.Outcome.Extinction.High, one.Outcome.Extinction.Low, one.Outcome.Extinction.High)
+	difference("added", *s.Added, *one.Added)
+	difference("option", s.Options[0].Difference, one.Options[0].Difference)
+	difference("the option adds", *s.Options[0].Added, *one.Options[0].Added)
+	for i := range s.Drivers {
+		difference("without "+s.Drivers[i].Without, s.Drivers[i].Difference, one.Drivers[i].Difference)
+	}
+	if len(s.Drivers) != 2 {
+		t.Errorf("%d drivers", len(s.Drivers))
+	}
+}
