@@ -24,11 +24,8 @@ func BuildSweep(s *sweep.Result, largest *sweep.Crossing, meta Meta) *Report {
 		panic("reports: a sweep of which nothing is complete")
 	}
 	c := s.Study.Base
-	r := sweepReport(s.Study, meta, s.Case.Risk, s.Case.Verdict, s.Case.Replicates)
+	r := sweepReport(s.Study, meta, s.Case.Risk, s.Case.Verdict, s.Case.Replicates, s.Warnings(largest))
 	r.Numbers = sweepNumbers(s, largest)
-	if s.Unsolved > 0 {
-		r.Warnings = append(r.Warnings, fmt.Sprintf("in %s no scale reaches the capacity; the case's own scales are kept there", counted(int64(s.Unsolved), "cell")))
-	}
 	z := newScores(c.Question.Confidence)
 	limit := math.NaN()
 	if c.Question.Limit.Set {
@@ -64,7 +61,7 @@ func BuildSweep(s *sweep.Result, largest *sweep.Crossing, meta Meta) *Report {
 func BuildMinimum(s *sweep.Study, q *sweep.Sizes, l *sweep.Crossing, meta Meta) *Report {
 	c := s.Base
 	at := l.At()
-	r := sweepReport(s, meta, at.Risk, at.Verdict, at.Risk.Of)
+	r := sweepReport(s, meta, at.Risk, at.Verdict, at.Risk.Of, l.Warnings(s))
 	r.Question = fmt.Sprintf("What is the smallest %s whose risk of falling to %s or fewer %s within %s is at most %s?", sizeWords(q), Plain(c.Question.Threshold), c.Counts,
 		counted(int64(q.Horizon), c.TimeUnit), percentOf(q.Risk))
 	r.Figures[0].Label = "the risk at " + Plain(at.Value)
@@ -83,7 +80,7 @@ func BuildMinimum(s *sweep.Study, q *sweep.Sizes, l *sweep.Crossing, meta Meta) 
 }
 
 // sweepReport is what every report of this kind begins with.
-func sweepReport(s *sweep.Study, meta Meta, risk pva.Proportion, v pva.Verdict, replicates int64) *Report {
+func sweepReport(s *sweep.Study, meta Meta, risk pva.Proportion, v pva.Verdict, replicates int64, warnings []pva.Warning) *Report {
 	c := s.Base
 	r := &Report{Meta: meta, Title: titleOf(c, meta.CaseFile), Prepared: c.Prepared, Purpose: c.Purpose, Question: Question(c), Digest: c.Digest(), Seed: c.Run.Seed,
 		Replicates: replicates, Asked: replicates, Confidence: c.Question.Confidence, Verdict: v, Provenance: provenance(InputsTable(c))}
@@ -94,7 +91,7 @@ func sweepReport(s *sweep.Study, meta Meta, risk pva.Proportion, v pva.Verdict, 
 	}
 	r.Figures = []Figure{f}
 	r.ShortCautions, r.Cautions = SweepCautions(c)
-	for _, w := range s.Warnings() {
+	for _, w := range warnings {
 		r.Warnings = append(r.Warnings, w.String())
 	}
 	return r

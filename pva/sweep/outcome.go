@@ -10,7 +10,8 @@ import (
 )
 
 // Outcome is what is derived from the tally of one cell, at the case's
-// confidence. Means are over replicates not outgrown.
+// confidence. Means are over the replicate-years before any outgrew: an assessment
+// averages year by year, which is the same where none does.
 type Outcome struct {
 	Cell       int
 	Set        []pva.Setting
@@ -50,6 +51,9 @@ type Result struct {
 	Unsolved   int
 	Units      int // of this shard
 	UnitsDone  int
+	// SubstepShift is the most that sub-steps are estimated to shift a
+	// probability of the cells; 0 without sub-steps.
+	SubstepShift float64
 }
 
 // Whole says whether every cell is complete.
@@ -81,6 +85,7 @@ func (r *Runner) result() *Result {
 		}
 	}
 	markBest(out.Cells)
+	out.SubstepShift = s.shift()
 	return out
 }
 

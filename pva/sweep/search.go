@@ -47,6 +47,9 @@ type Crossing struct {
 	// the first crossing.
 	Breaks     []Break
 	Replicates int64 // the most that any value was given
+	// SubstepShift is the most that sub-steps are estimated to shift the risk of
+	// a value that was simulated; 0 without sub-steps.
+	SubstepShift float64
 }
 
 // Low is the smaller of Safe and Other, High the larger; NaN where that one is not known.
@@ -313,7 +316,7 @@ func (c *curve) answer(ctx context.Context, level int64) (*Crossing, error) {
 		p := c.at(x)
 		out.Value, out.Risk, out.Exact, out.Verdict = x, p.Risk, p.Exact, p.Verdict
 	}
-	out.Breaks = c.breaks()
+	out.Breaks, out.SubstepShift = c.breaks(), c.shift()
 	for _, p := range c.points {
 		out.Points = append(out.Points, p)
 		out.Replicates = max(out.Replicates, p.n)

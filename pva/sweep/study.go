@@ -179,18 +179,6 @@ func nearestDecimal(v float64) float64 {
 	return r
 }
 
-// Warnings are the doubts that a study adds to those of its case.
-func (s *Study) Warnings() []pva.Warning {
-	if len(s.Base.Uncertain) == 0 {
-		return nil
-	}
-	var keys []string
-	for _, u := range s.Base.Uncertain {
-		keys = append(keys, u.Key)
-	}
-	return []pva.Warning{{Key: "uncertain", Text: "inputs that the case marks as uncertain (" + strings.Join(keys, ", ") + ") are taken at their stated values: what they are unsure by is not in these risks and intervals"}}
-}
-
 // Cells is the number of cells.
 func (s *Study) Cells() int { return s.n }
 

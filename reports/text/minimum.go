@@ -40,7 +40,7 @@ func Minimum(s *sweep.Study, q *sweep.Sizes, l *sweep.Crossing, file string) str
 		rows = append(rows, []string{reports.Plain(p.Value), reports.Percent(p.Risk.Estimate, digits), interval, on, shortVerdict(p.Verdict)})
 	}
 	b.WriteString(columns(rows, "  ", true, true, false, false))
-	b.WriteString(doubts(s))
+	b.WriteString(doubts(l.Warnings(s)))
 	return b.String() + "\n" + cautions(c)
 }
 

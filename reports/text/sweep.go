@@ -43,16 +43,13 @@ func Sweep(r *sweep.Result, largest *sweep.Crossing, file string) string {
 			b.WriteString("\n" + doubtRows(r))
 		}
 	}
-	if r.Unsolved > 0 {
-		b.WriteString("\n" + wrap(fmt.Sprintf("Warning: in %s no scale reaches the capacity; the case's own scales are kept there.", countOf(int64(r.Unsolved), "cell")), "", 2))
-	}
-	b.WriteString(doubts(r.Study))
+	b.WriteString(doubts(r.Warnings(largest)))
 	return b.String() + "\n" + cautions(c)
 }
 
-func doubts(s *sweep.Study) string {
+func doubts(warnings []pva.Warning) string {
 	var b strings.Builder
-	for _, w := range s.Warnings() {
+	for _, w := range warnings {
 		b.WriteString("\n" + wrap("Warning: "+w.Text, "", 2))
 	}
 	return b.String()

@@ -107,10 +107,10 @@ type sweepDocument struct {
 	Warnings   []string       `json:"warnings"`
 }
 
-func header(s *sweep.Study, command, version string) sweepDocument {
+func header(s *sweep.Study, command, version string, warnings []pva.Warning) sweepDocument {
 	c := s.Base
 	d := sweepDocument{Program: "ebbline", Version: version, Command: command, Case: caseID{c.Title, c.Digest()}, Seed: c.Run.Seed, Replicates: c.Run.Replicates, Question: questionOf(c), Warnings: []string{}}
-	for _, w := range s.Warnings() {
+	for _, w := range warnings {
 		d.Warnings = append(d.Warnings, w.String())
 	}
 	return d
@@ -125,7 +125,7 @@ func (null) MarshalJSON() ([]byte, error) { return []byte("null"), nil }
 // SweepJSON is a sweep as an indented JSON document. The search may be nil where
 // none was made.
 func SweepJSON(r *sweep.Result, largest *sweep.Crossing, version string) ([]byte, error) {
-	d := header(r.Study, "sweep", version)
+	d := header(r.Study, "sweep", version, r.Warnings(largest))
 	if r.Case != nil {
 		d.Risk = proportionOf(r.Case.Risk)
 	}
@@ -234,7 +234,7 @@ type minimumAnswer struct {
 
 // MinimumJSON is the minimum viable size as an indented JSON document.
 func MinimumJSON(s *sweep.Study, q *sweep.Sizes, l *sweep.Crossing, version string) ([]byte, error) {
-	d := header(s, "minimum", version)
+	d := header(s, "minimum", version, l.Warnings(s))
 	d.search(l)
 	if l.Found {
 		d.Minimum = minimumAnswer{number(l.Value), number(l.Low()), number(l.High()), number(q.Risk), pointRisk(l.Risk, l.Exact), q.Horizon, q.Vary, l.Exact != nil, l.Reason}
