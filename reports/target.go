@@ -44,7 +44,7 @@ func clearLeftovers(path string) {
 func CheckFolder(dir string) error {
 	f, err := os.CreateTemp(dir, ".ebbline-*")
 	if err != nil {
-		return fmt.Errorf("no file can be written into the folder %s (%v); use --out for another place", dir, reason(err))
+		return fmt.Errorf("no file can be written into the folder %s (%v); give another place", dir, reason(err))
 	}
 	f.Close()
 	return os.Remove(f.Name())

@@ -100,8 +100,14 @@ func (a *app) writeStarter(path string, force bool) error {
 
 // writeCase saves a case to a new file and says what may come next.
 func (a *app) writeCase(path string, data []byte, force bool, next string) error {
-	if _, err := os.Stat(path); err == nil && !force {
+	switch info, err := os.Stat(path); {
+	case err == nil && info.IsDir():
+		return badInputf("%s is a folder; give the name of a file", path)
+	case err == nil && !force:
 		return badInputf("%s exists; use --force to replace it", path)
+	}
+	if err := takesFiles(path, filepath.Dir(path)); err != nil {
+		return err
 	}
 	if err := reports.Save(path, data); err != nil {
 		return err

@@ -1,6 +1,9 @@
 package main
 
 import (
+	"errors"
+	"fmt"
+	"io/fs"
 	"os"
 	"path/filepath"
 
@@ -49,16 +52,40 @@ func (o *outputs) fresh(path, caseName string) error {
 		return badInputf("%s exists; use --force to replace it", path)
 	}
 	dir := filepath.Dir(path)
-	if _, err := os.Stat(dir); err != nil {
-		if dir == filepath.Clean(o.csv) || dir == filepath.Clean(o.figures) {
-			return nil // made when it is written
-		}
+	if dir == filepath.Clean(o.csv) || dir == filepath.Clean(o.figures) {
+		dir = existing(dir) // the rest is made when it is written
+	}
+	return takesFiles(path, dir)
+}
+
+// takesFiles makes sure that a file can be made at path, in the folder given.
+func takesFiles(path, dir string) error {
+	switch info, err := os.Stat(dir); {
+	case errors.Is(err, fs.ErrNotExist):
 		return badInputf("%s: the folder %s does not exist", path, dir)
+	case err != nil:
+		return badInput{fmt.Errorf("%s: %w", path, plainPathError(err))}
+	case !info.IsDir():
+		return badInputf("%s: %s is a file and no folder; give another place", path, dir)
 	}
 	if err := reports.CheckFolder(dir); err != nil {
 		return badInput{err}
 	}
 	return nil
+}
+
+// existing is the nearest folder above dir, or dir itself, that is there.
+func existing(dir string) string {
+	for {
+		if _, err := os.Lstat(dir); err == nil {
+			return dir
+		}
+		up := filepath.Dir(dir)
+		if up == dir {
+			return dir
+		}
+		dir = up
+	}
 }
 
 var csvFiles = []string{"years.csv", "inputs.csv"}

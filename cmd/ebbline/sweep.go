@@ -241,7 +241,7 @@ func (a *app) tellDamage(s *sweep.Runner) {
 
 // ledgerError is the error of a ledger that cannot be used: the person's to mend.
 func ledgerError(err error) error {
-	if errors.Is(err, ledger.ErrOther) || errors.Is(err, sweep.ErrHolds) {
+	if errors.Is(err, ledger.ErrOther) || errors.Is(err, ledger.ErrDamaged) || errors.Is(err, ledger.ErrFolder) || errors.Is(err, sweep.ErrHolds) {
 		return badInput{err}
 	}
 	return err

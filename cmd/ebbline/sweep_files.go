@@ -9,6 +9,7 @@ import (
 
 	"ebbline/pva"
 	"ebbline/pva/sweep"
+	"ebbline/pva/sweep/ledger"
 	"ebbline/reports"
 	"ebbline/reports/tidy"
 	"ebbline/reports/workbook"
@@ -32,7 +33,7 @@ func (l *longRun) addFlags(f longFlags) {
 	f.IntVar(&l.workers, "workers", 0, "how many parts run side by side (default: all cores)")
 	f.StringVar(&l.ledger, "ledger", "", "keep what is finished in the folder `DIR` (default: beside the case)")
 	f.BoolVar(&l.resume, "resume", false, "go on with what the ledger holds")
-	f.BoolVar(&l.untilDecided, "until-decided", false, "add replicates until no value is left undecided (at most 256 times as many)")
+	f.BoolVar(&l.untilDecided, "until-decided", false, "search on, with up to 256 times the replicates, until no value is undecided")
 	f.BoolVar(&l.noExact, "no-exact", false, "search by simulation alone")
 }
 
@@ -92,13 +93,8 @@ func (o *outputs) checkFiles(book string, c *pva.Case, name string, tables ...st
 // files are taken for a sweep's.
 func notForeign(dir string) error {
 	inside, err := os.ReadDir(dir)
-	if err != nil || len(inside) == 0 {
+	if err != nil || len(inside) == 0 || ledger.Holds(dir) {
 		return nil // made by the ledger, or told by it
-	}
-	for _, e := range inside {
-		if e.Name() == "manifest.json" {
-			return nil
-		}
 	}
 	return badInputf("the folder %s holds other files and no ledger; name another with --ledger", dir)
 }

@@ -102,7 +102,7 @@ func Open(s *Study, opt Options) (*Runner, error) {
 	}
 	r.Before = mine
 	if (mine > 0 || len(r.points) > 0) && !opt.Resume {
-		return nil, fmt.Errorf("ledger %s %w (%d of %d units): give --resume to go on with it, or --force to start over", opt.Ledger, ErrHolds, mine, r.units())
+		return nil, fmt.Errorf("ledger %s %w (%d of %d units): give --resume to go on with it, or --force to throw it away and start over", opt.Ledger, ErrHolds, mine, r.units())
 	}
 	return r, nil
 }

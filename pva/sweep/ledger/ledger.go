@@ -62,6 +62,9 @@ type Ledger struct {
 	timer  *time.Timer
 }
 
+// ErrFolder is wrapped by the error of a folder that takes no ledger.
+var ErrFolder = errors.New("takes no ledger")
+
 // ErrOther is wrapped by the error of a folder that holds another run.
 var ErrOther = errors.New("is the ledger of another run")
 
@@ -70,13 +73,13 @@ var ErrOther = errors.New("is the ledger of another run")
 // label tells writers apart to people ("shard-2"); it may be empty.
 func Open(dir string, m Manifest, label string) (*Ledger, error) {
 	if err := os.MkdirAll(dir, 0o777); err != nil {
-		return nil, fmt.Errorf("ledger %s: cannot be made: %w", dir, reason(err))
+		return nil, noFolder(dir, err)
 	}
 	had, err := ReadManifest(dir)
 	switch {
 	case errors.Is(err, fs.ErrNotExist):
 		if err := m.write(dir); err != nil {
-			return nil, fmt.Errorf("ledger %s: the manifest cannot be written: %w", dir, reason(err))
+			return nil, noFolder(dir, err)
 		}
 		// Another process may have put its own there at the same moment.
 		if had, err = ReadManifest(dir); err != nil {
@@ -89,6 +92,10 @@ func Open(dir string, m Manifest, label string) (*Ledger, error) {
 		return nil, fmt.Errorf("ledger %s %w: %s; name another folder with --ledger", dir, ErrOther, d)
 	}
 	return &Ledger{dir: dir, id: m.id(), label: label}, nil
+}
+
+func noFolder(dir string, err error) error {
+	return fmt.Errorf("the folder %s %w (%w); name another with --ledger", dir, ErrFolder, reason(err))
 }
 
 // Dir is the folder.

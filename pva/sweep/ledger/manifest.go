@@ -120,12 +120,21 @@ func ReadManifest(dir string) (Manifest, error) {
 		return m, fmt.Errorf("ledger %s: the manifest cannot be read: %w", dir, reason(err))
 	}
 	if err := json.Unmarshal(data, &m); err != nil {
-		return m, fmt.Errorf("ledger %s: the manifest is damaged (%v); start over with --force", dir, err)
+		return m, damaged(dir, err.Error())
 	}
 	if m.Checksum != m.checksum() {
-		return m, fmt.Errorf("ledger %s: the manifest is damaged (its checksum does not fit); start over with --force", dir)
+		return m, damaged(dir, "its checksum does not fit")
 	}
 	return m, nil
+}
+
+// ErrDamaged is wrapped by the error of a manifest that cannot be trusted.
+var ErrDamaged = errors.New("the manifest is damaged")
+
+// damaged says how to go on: records name their run themselves, so that those of
+// this run are known again under a manifest written anew.
+func damaged(dir, why string) error {
+	return fmt.Errorf("ledger %s: %w (%s); delete %s and run again with --resume, which keeps what is finished, or start over with --force", dir, ErrDamaged, why, filepath.Join(dir, manifestName))
 }
 
 func (m Manifest) checksum() string {

@@ -5,6 +5,7 @@ import (
 	"crypto/sha256"
 	"encoding/binary"
 	"fmt"
+	"io"
 	"os"
 	"path/filepath"
 	"strings"
@@ -154,6 +155,31 @@ func list(dir string, wanted func(name string) bool) ([]string, error) {
 
 func isRecords(name string) bool {
 	return strings.HasPrefix(name, recordsPrefix) && strings.HasSuffix(name, recordsSuffix)
+}
+
+// Holds says whether a folder holds a ledger: a manifest, or records alone, as
+// when a damaged manifest was taken away.
+func Holds(dir string) bool {
+	if _, err := os.Lstat(filepath.Join(dir, manifestName)); err == nil {
+		return true
+	}
+	names, err := list(dir, isRecords)
+	if err != nil {
+		return false
+	}
+	for _, name := range names {
+		f, err := os.Open(name)
+		if err != nil {
+			continue
+		}
+		start := make([]byte, len(mark))
+		_, err = io.ReadFull(f, start)
+		f.Close()
+		if err == nil && string(start) == mark {
+			return true
+		}
+	}
+	return false
 }
 
 // isOurs is every file that a ledger may leave in its folder.
