@@ -13,7 +13,7 @@ func readingUncertainty(a *pva.Assessment) []Paragraph {
 	say := func(s string) { out = append(out, Paragraph{Text: s}) }
 	say("Each of " + counted(int64(u.Draws), "draw") + " gives every uncertain input a value from its law (a Latin hypercube: McKay, Beckman & Conover 1979; rank correlations by Iman & Conover 1982) and is a case of its own with " +
 		counted(u.Each, "replicate") + ". Replicate r of the run belongs to draw r mod " + Grouped(int64(u.Asked)) + ".")
-	say("The pooled risk is the mean over the draws: the risk as far as it is known. Its interval is the mean plus and minus Student's t times SD/sqrt(draws) of the shares fallen of the draws, nowhere narrower than Wilson's interval of all replicates. It says how far this mean is settled by so many draws, and not where the risk of the population lies: that is what the law of the risk over the draws shows.")
+	say("The pooled risk is the mean over the draws: the risk as far as it is known. Its interval is by betting against every mean that it could be (Waudby-Smith & Ramdas 2024) with the shares fallen of the draws: it holds for any law of the risk over independent draws, however few, and is nowhere narrower than Wilson's interval of all replicates. It says how far this mean is settled by so many draws, and not where the risk of the population lies: that is what the law of the risk over the draws shows.")
 	if u.Case.Law.Exact {
 		say("The law of the risk over the draws is that of the exact risks of the draws, each within " + Significant(u.Case.ExactError, 2) + "; replicates have no part in it.")
 	} else if u.Case.Law.Reason == "" {
@@ -46,6 +46,7 @@ func readingUncertainty(a *pva.Assessment) []Paragraph {
 		say("Options are run on the same draws. A number that an option sets itself stays as it sets it in every draw.")
 	}
 	for _, ref := range []string{
+		"Waudby-Smith, I. & Ramdas, A. 2024. Estimating means of bounded random variables by betting. Journal of the Royal Statistical Society B 86:1-27.",
 		"Iman, R. L. & Conover, W. J. 1982. A distribution-free approach to inducing rank correlation among input variables. Communications in Statistics B 11:311-334.",
 		"McKay, M. D., Beckman, R. J. & Conover, W. J. 1979. A comparison of three methods for selecting values of input variables in the analysis of output from a computer code. Technometrics 21:239-245.",
 		"Griffiths, D. A. 1973. Maximum likelihood estimation for the beta-binomial distribution. Biometrics 29:637-648.",

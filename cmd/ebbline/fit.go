@@ -59,7 +59,7 @@ taken to come once a year unless --breeding says otherwise.`,
 	f.Float64Var(&in.opt.Threshold, "threshold", 0, "`ABUNDANCE` at or below which the population has fallen (default: a tenth of the last count)")
 	f.IntVar(&in.opt.Horizon, "horizon", 50, "`YEARS` to look ahead")
 	f.StringVar(&in.zeros, "zeros", "", "what a count of 0 means: `missing or half`")
-	f.Uint64Var(&in.opt.Seed, "seed", 1, "the seed of the random numbers of the resampled series")
+	f.Uint64Var(&in.opt.Seed, "seed", 1, "the seed of the random numbers of the risk's interval")
 	f.StringVar(&in.json, "json", "", "write the result as JSON to `FILE` (- is standard output)")
 	f.BoolVar(&in.quiet, "quiet", false, "print nothing but errors")
 	f.BoolVar(&in.force, "force", false, "overwrite existing files")

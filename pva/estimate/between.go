@@ -1,25 +1,23 @@
 package estimate
 
 import (
-	"fmt"
 	"math"
+	"slices"
+	"sort"
 
 	"gonum.org/v1/gonum/stat/distuv"
 
 	"ebbline/pva"
 )
 
-// BetweenDraws is the mean of one value a draw, with the interval mean +- t
-// SD/sqrt(n), t the quantile of Student's law with n-1 degrees of freedom. Draws
-// that are not independent but stratified, as a Latin hypercube is, have a mean
-// that varies less (McKay, Beckman & Conover 1979, Technometrics 21:239; Stein
-// 1987, Technometrics 29:143), so that the interval is on the safe side for them.
-// With one value the limits are infinite; with none all is NaN.
+// BetweenDraws is the mean of one value in [0, 1] a draw, with an interval that
+// holds for any law of the values and any number of draws (see betweenBets):
+// risks over draws are skewed, and mean +- t SD/sqrt(n) of few of them lies too
+// low too often. With no value the mean is NaN and the interval [0, 1].
 func BetweenDraws(values []float64, confidence float64) (mean, low, high float64) {
-	n := float64(len(values))
-	mean, variance := moments(values)
-	half := studentHalf(variance, n, confidence)
-	return mean, mean - half, mean + half
+	mean, _ = moments(values)
+	low, high = betweenBets(together(values), confidence)
+	return mean, low, high
 }
 
 // studentHalf is the half width t sqrt(variance/n).
@@ -47,51 +45,59 @@ func moments(values []float64) (mean, variance float64) {
 	return mean, variance / math.Max(1, n-1)
 }
 
-// DrawSums adds up one count a draw and its square, in whole numbers, so that
+// DrawSums gathers one count a draw, as how many draws have each count, so that
 // the order of draws cannot matter.
 type DrawSums struct {
-	Draws         int64
-	Sum, Squares  pva.Sum
-	mostOfOneDraw int64
+	Draws  int64
+	counts []group // in ascending order
 }
 
-// Add adds the count of one draw: from 0 to 3e9.
+// Add adds the count of one draw, not below 0.
 func (s *DrawSums) Add(count int64) {
 	s.Draws++
-	s.Sum.Add(count)
-	s.Squares.Add(count * count)
-	s.mostOfOneDraw = max(s.mostOfOneDraw, count)
+	i := sort.Search(len(s.counts), func(i int) bool { return s.counts[i].fallen >= count })
+	if i == len(s.counts) || s.counts[i].fallen != count {
+		s.counts = slices.Insert(s.counts, i, group{count, 0})
+	}
+	s.counts[i].draws++
 }
 
 // Pooled is the probability of an event from the counts of draws of each
-// replicates, with the interval between draws: the mean of the draws' shares +- t
-// SD/sqrt(draws), cut to [0, 1]. To either side it is never narrower than
-// Wilson's interval of all replicates: rare events that no draw, or few, have
-// shown would otherwise seem known without doubt, SD being 0 or nearly so.
+// replicates, with the interval between draws of BetweenDraws from the shares of
+// the draws, nowhere narrower than Wilson's of all replicates. With one replicate
+// a draw the replicates are the draws, and the interval is Wilson's.
 func (s *DrawSums) Pooled(each int64, confidence float64) pva.Proportion {
-	if s.mostOfOneDraw > each {
-		panic(fmt.Sprintf("estimate: a draw of %d replicates with %d events", each, s.mostOfOneDraw))
+	var sum int64
+	shares := make([]weighted, len(s.counts))
+	for i, g := range s.counts {
+		mustCount(g.fallen, each)
+		sum += g.fallen * g.draws
+		shares[i] = weighted{float64(g.fallen) / float64(each), float64(g.draws)}
 	}
-	n, sum := float64(s.Draws), s.Sum.Float()
-	p := Proportion(int64(sum), s.Draws*each, confidence)
-	variance := math.Max(0, s.Squares.Float()-sum*sum/n) / math.Max(1, n-1) / float64(each) / float64(each)
-	half := studentHalf(variance, n, confidence)
-	p.Low = math.Max(0, math.Min(p.Low, p.Estimate-half))
-	p.High = math.Min(1, math.Max(p.High, p.Estimate+half))
+	p := Proportion(sum, s.Draws*each, confidence)
+	if each == 1 {
+		return p
+	}
+	low, high := betweenBets(shares, confidence)
+	p.Low, p.High = math.Min(p.Low, low), math.Max(p.High, high)
 	return p
 }
 
 // PooledDifference gives a paired difference of two risks its interval between
-// draws, from the counts of both by draw, of each replicates. It is never
-// narrower than the interval that the difference has from its replicates.
+// draws, from the counts of both by draw, of each replicates: mean +- t
+// SD/sqrt(draws), t the quantile of Student's law with draws-1 degrees of
+// freedom. It is never narrower than the interval that the difference has from
+// its replicates. No verdict rests on it: with few draws of a skewed law it holds
+// the difference less often than it says.
 func PooledDifference(d pva.Difference, this, other []int64, each int64, confidence float64) pva.Difference {
 	values := make([]float64, len(this))
 	for i := range this {
 		values[i] = float64(this[i]-other[i]) / float64(each)
 	}
-	_, low, high := BetweenDraws(values, confidence)
-	d.Low = math.Max(-1, math.Min(d.Low, low))
-	d.High = math.Min(1, math.Max(d.High, high))
+	mean, variance := moments(values)
+	half := studentHalf(variance, float64(len(values)), confidence)
+	d.Low = math.Max(-1, math.Min(d.Low, mean-half))
+	d.High = math.Min(1, math.Max(d.High, mean+half))
 	return d
 }
 

@@ -199,14 +199,34 @@ func TestExactLaw(t *testing.T) {
 	within(t, "mean", r.Law.Mean, 0.15, 1e-15)
 	// Variance of 0.04, 0.1, 0.26, 0.2: (0.0121 + 0.0025 + 0.0121 + 0.0025)/3.
 	within(t, "standard deviation", r.Law.SD, math.Sqrt(0.0292/3), 1e-15)
-	within(t, "low", r.Mean.Low, math.Max(0, 0.15-3.182446*math.Sqrt(0.0292/12)-0.001), 1e-6)
-	within(t, "high", r.Mean.High, 0.15+3.182446*math.Sqrt(0.0292/12)+0.001, 1e-6)
-	low, high := Wilson(2, 4, 0.95)
+	_, low, high := BetweenDraws(r.Exact, 0.95)
+	within(t, "low", r.Mean.Low, low-0.001, 1e-15)
+	within(t, "high", r.Mean.High, high+0.001, 1e-15)
+	low, high = Wilson(2, 4, 0.95)
 	if *r.Within != (pva.Chance{Estimate: 0.5, Low: low, High: high}) {
 		t.Errorf("within %+v", *r.Within)
 	}
 	if p := r.Law.Percentiles; p != (pva.Percentiles{P05: 0.04, P25: 0.04, P50: 0.1, P75: 0.2, P95: 0.26}) {
 		t.Errorf("percentiles %+v", p)
+	}
+}
+
+// TestFewDrawsDoNotDecide: 20 draws whose exact risks are all small do not show
+// that the mean over all draws is within 5 %: with one draw in 14 fallen for sure
+// (mean 7 %) none of 20 is such a draw in 23 of 100 runs. Of 200 draws one is.
+func TestFewDrawsDoNotDecide(t *testing.T) {
+	limit := pva.Optional{Value: 0.05, Set: true}
+	for draws, want := range map[int]pva.Verdict{20: pva.Undecided, 200: pva.Within} {
+		r := &pva.DrawnRisk{Fallen: make([]int64, draws)}
+		for i := range draws {
+			r.Exact = append(r.Exact, 0.001+0.0001*float64(i%7))
+		}
+		DrawnRisk(r, 50, limit, 0.95)
+		for what, p := range map[string]pva.Proportion{"exact": {Low: r.Mean.Low, High: r.Mean.High}, "pooled": r.Pooled} {
+			if got := Verdict(limit, p); got != want {
+				t.Errorf("%d draws, %s: verdict %v (%g to %g), want %v", draws, what, got, p.Low, p.High, want)
+			}
+		}
 	}
 }
 

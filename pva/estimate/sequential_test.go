@@ -2,11 +2,10 @@ package estimate
 
 import (
 	"math"
+	"math/rand/v2"
 	"testing"
 
 	"ebbline/pva"
-
-	"golang.org/x/exp/rand"
 )
 
 // TestPairedAtEveryLookCoverage: of 2,000 growing sets of pairs looked at after
@@ -16,7 +15,7 @@ import (
 func TestPairedAtEveryLookCoverage(t *testing.T) {
 	const sets, only, other, both = 2000, 0.06, 0.02, 0.05
 	margin := 5.73 * math.Sqrt(sets*.05*.95)
-	src := rand.New(rand.NewSource(17))
+	src := rand.New(rand.NewPCG(17, 0))
 	missed, single := 0, 0
 	for range sets {
 		var a, b, ab, n int64

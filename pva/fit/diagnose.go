@@ -18,6 +18,9 @@ type Diagnostics struct {
 	Autocorrelation Estimate
 	Largest         float64 // the largest residual, standardised
 	Outlying        []Outlying
+	// RunningSums is a second opinion on the process variance, nil for a series
+	// with gaps or of few counts.
+	RunningSums *RunningSums
 }
 
 // Outlying is a change far from the others: a candidate for a catastrophe
@@ -25,8 +28,8 @@ type Diagnostics struct {
 type Outlying struct {
 	From, To float64 // dates
 	Factor   float64 // abundance at To over abundance at From
-	T        float64 // studentised by the other residuals
-	P        float64 // chance that the largest of all residuals is so large
+	T        float64 // studentised by the other residuals; infinite where they are all 0
+	P        float64 // chance that the largest of all residuals is so large; 0 where T is infinite
 	Down     bool
 }
 
@@ -35,7 +38,7 @@ type Outlying struct {
 const outlyingLevel = 0.05
 
 func diagnose(p *prepared, d *Drift, confidence float64) *Diagnostics {
-	out := &Diagnostics{}
+	out := &Diagnostics{RunningSums: runningSums(p)}
 	q := d.Intervals
 	n := float64(q)
 	s := math.Sqrt(d.Variance.Value)
@@ -67,12 +70,14 @@ func diagnose(p *prepared, d *Drift, confidence float64) *Diagnostics {
 	nu := n - 2
 	student := distuv.StudentsT{Mu: 0, Sigma: 1, Nu: nu}
 	for i, e := range std {
-		rest := (n - 1 - e*e) / nu
-		if rest <= 0 {
-			continue
+		// Where all other changes are alike nothing is left of the spread, or
+		// what rounding left, to either side of 0: no change lies further out.
+		t, chance := math.Copysign(math.Inf(1), e), 0.0
+		if rest := (n - 1 - e*e) / nu; rest > 0 {
+			t = e / math.Sqrt(rest)
+			chance = math.Min(1, n*2*student.CDF(-math.Abs(t)))
 		}
-		t := e / math.Sqrt(rest)
-		if chance := math.Min(1, n*2*student.CDF(-math.Abs(t))); chance < outlyingLevel {
+		if chance < outlyingLevel {
 			out.Outlying = append(out.Outlying, Outlying{From: p.year[i], To: p.year[i+1], Factor: p.n[i+1] / p.n[i], T: t, P: chance, Down: e < 0})
 		}
 	}

@@ -14,8 +14,8 @@ type Options struct {
 	Threshold  float64  // abundance counted as fallen; default a tenth of the last count
 	Horizon    int      // time units ahead; default 50, at most 1000
 	Confidence float64  // level of every interval; default 0.95
-	Seed       uint64   // names the random numbers of the resampling; default 1
-	Resamples  int      // resampled series; default 2000
+	Seed       uint64   // names the random numbers of those draws; default 1
+	Resamples  int      // draws of drift and variance for the risk's interval; default 2000
 	Zeros      ZeroRule // what a count of 0 means
 }
 
@@ -124,7 +124,11 @@ func (r *Result) model(name string) *Model {
 
 // risk is the risk, or the reason why none is stated.
 func (r *Result) risk() *Risk {
-	out := fitRisk(r.p, r.Drift, r.Split, r.Options)
+	var parted *Split
+	if r.separated() {
+		parted = r.Split
+	}
+	out := fitRisk(r.p, r.Drift, parted, r.Options)
 	switch {
 	case r.Counts < MinimumRisk:
 		out.Withheld = fmt.Sprintf("%d counts are too few for a risk (at least %d)", r.Counts, MinimumRisk)
@@ -169,7 +173,11 @@ func (r *Result) doubts() []pva.Warning {
 		if o.Down {
 			kind = "catastrophe"
 		}
-		doubt("the change from %s to %s (times %.3g) lies far outside the others (p = %.2g over all): a candidate %s, to be looked up and stated as one if it was", dateText(o.From), dateText(o.To), o.Factor, o.P, kind)
+		how := fmt.Sprintf("p = %.2g over all", o.P)
+		if o.P == 0 {
+			how = "which are all alike"
+		}
+		doubt("the change from %s to %s (times %.3g) lies far outside the others (%s): a candidate %s, to be looked up and stated as one if it was", dateText(o.From), dateText(o.To), o.Factor, how, kind)
 	}
 	switch s := r.Split; {
 	case s.Stated && s.Process.Value == 0:

@@ -6,6 +6,7 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"regexp"
 	"sort"
 	"strconv"
 	"strings"
@@ -95,6 +96,7 @@ type reading struct {
 	lines  []string
 	faults Faults
 	comma  bool // decimals may be written with a comma
+	semi   bool // columns are parted by semicolons, as where decimals have a comma
 	at     map[string]int
 }
 
@@ -133,7 +135,7 @@ func Read(name string, data []byte) (*Series, error) {
 	p.FieldsPerRecord, p.TrimLeadingSpace, p.ReuseRecord = -1, true, true
 	p.Comma = separator(text)
 	p.Comment = '#'
-	r.comma = p.Comma != ','
+	r.comma, r.semi = p.Comma != ',', p.Comma == ';'
 	s := &Series{File: name, TimeUnit: "year"}
 	t := table{r: r, s: s}
 	for {
@@ -203,6 +205,9 @@ func (r *reading) named(i int) bool {
 	}
 	return false
 }
+
+// grouped is a number in groups of three, as 1.200 is where decimals have a comma.
+var grouped = regexp.MustCompile(`^[1-9][0-9]{0,2}(\.[0-9]{3})+$`)
 
 // number reads a decimal number; nothing else that a parser would take.
 func (r *reading) number(s string) (float64, error) {

@@ -66,34 +66,6 @@ func TestCoverage(t *testing.T) {
 	}
 }
 
-// TestResampledLaw: the resampled drifts have the law of the estimates: mean
-// and variance of both, each within 5.73 standard errors (level 1e-8).
-func TestResampledLaw(t *testing.T) {
-	p := simulated(rng.NewStream(3, 0, rng.Resample), 20, 0.01, 0.05, 0)
-	d, _ := fitDrift(p, 0.95)
-	const n = 20000
-	mu, variance := drawDrifts(p, d, 5, n)
-	nu := float64(d.Intervals - 1)
-	near := func(what string, got, want, se float64) {
-		if !(math.Abs(got-want) <= 5.73*se) {
-			t.Errorf("%s: %.6g, want %.6g (%.1f standard errors)", what, got, want, (got-want)/se)
-		}
-	}
-	sd := math.Sqrt(d.Variance.Value / d.Span)
-	near("drift", mean(mu), d.Mu.Value, sd/math.Sqrt(n))
-	near("its variance", deviation(mu)*deviation(mu), sd*sd, sd*sd*math.Sqrt(2.0/n))
-	near("variance", mean(variance), d.Variance.Value, d.Variance.Value*math.Sqrt(2/nu/n))
-	// The fourth moment of a chi-squared law: 12 nu (nu + 4) around its mean.
-	v2 := d.Variance.Value * d.Variance.Value * 2 / nu
-	near("its variance", deviation(variance)*deviation(variance), v2, v2*math.Sqrt(((12*nu*(nu+4))/(4*nu*nu)-1)/n))
-	again, _ := drawDrifts(p, d, 5, 10)
-	for i, m := range again {
-		if m != mu[i] {
-			t.Fatalf("resampled series %d depends on how many there are", i)
-		}
-	}
-}
-
 // TestCrowdingRecovered: 400 series that follow a Ricker curve give back its
 // slope. Least squares of growth on abundance is biased towards too steep a
 // slope (B. Dennis & M. L. Taper 1994), by about the standard error over 5 at

@@ -20,52 +20,52 @@ type Risk struct {
 	ByHorizon Estimate
 	Ever      Estimate
 	Years     []estimate.YearRisk // one for each time unit to the horizon
-	// Process is the risk by the horizon with the process variance of the
-	// split in place of the whole variance, NaN without one.
+	// Process is the risk by the horizon without the errors of counting: with
+	// the process variance and drift of the split, averaged over the abundance
+	// behind the last count. NaN where the errors are not parted.
 	Process   float64
-	Resamples int
+	Resamples int // draws of drift and variance behind the intervals
 }
 
-// drawDrifts makes so many estimates of drift and variance from series
-// simulated with the fitted ones at the dates of the counts: the parametric
-// bootstrap (B. Efron 1979, Ann. Statist. 7:1-26). Series i uses the random
-// numbers of (seed, i).
-func drawDrifts(p *prepared, d *Drift, seed uint64, times int) (mu, variance []float64) {
-	q := p.steps()
-	tau := make([]float64, q)
-	root := make([]float64, q)
-	for i := range tau {
-		tau[i] = p.tau(i)
-		root[i] = math.Sqrt(d.Variance.Value * tau[i])
-	}
-	w := make([]float64, q)
+// drawDrifts makes so many draws of drift and variance that stand for what the
+// counts leave open of them. The estimates have exact laws: the variance v with
+// nu degrees of freedom is that of chi-squared, the drift is normal with the
+// variance over the span of the counts, and the two are independent (B. Dennis,
+// P. L. Munholland & J. M. Scott 1991, Ecol. Monogr. 61:115-143). Turned around
+// they are v* = v nu/chi-squared and mu* = mu + sqrt(v*/span) z: the generalised
+// pivots of S. Weerahandi 1993, J. Am. Stat. Assoc. 88:899-905. The shares of
+// draws below a figure made of both make its interval. Estimates from series
+// simulated with the fitted values (the parametric bootstrap) would vary as the
+// estimates do around the truth and not as the truth does around them: 95 %
+// intervals made so hold the risk in 90 to 93 of 100 series of 10 to 25 counts,
+// and lie too low in 5 to 10 of them. Draw k uses the random numbers of (seed, k).
+func drawDrifts(d *Drift, seed uint64, times int) (mu, variance []float64) {
+	nu := d.Intervals - 1
 	mu, variance = make([]float64, times), make([]float64, times)
 	var s rng.Stream
 	for k := range mu {
 		s.Seed(seed, uint64(k), rng.Resample)
-		sum := 0.0
-		for i := range w {
-			w[i] = d.Mu.Value*tau[i] + float64(root[i]*rng.Normal(&s))
-			sum += w[i]
+		z := rng.Normal(&s)
+		chi := 0.0
+		for range nu {
+			e := rng.Normal(&s)
+			chi += float64(e * e)
 		}
-		m := sum / d.Span
-		rss := 0.0
-		for i := range w {
-			e := w[i] - float64(m*tau[i])
-			rss += float64(e * e / tau[i])
-		}
-		mu[k], variance[k] = m, rss/float64(q-1)
+		variance[k] = d.Variance.Value * float64(nu) / chi
+		mu[k] = d.Mu.Value + float64(math.Sqrt(variance[k]/d.Span)*z)
 	}
 	return mu, variance
 }
 
-// fitRisk is the first-passage risk by each time unit with its percentile
-// interval over the resampled drifts.
-func fitRisk(p *prepared, d *Drift, split *Split, o Options) *Risk {
+// fitRisk is the first-passage risk by each time unit with its interval over the
+// draws of drift and variance. It starts at the last count as it is, as the
+// variance holds the error of that count; without the errors of counting the
+// start is uncertain instead.
+func fitRisk(p *prepared, d *Drift, parted *Split, o Options) *Risk {
 	r := &Risk{Start: p.last(), Threshold: o.Threshold, Horizon: o.Horizon, Resamples: o.Resamples, Process: math.NaN()}
 	x := math.Log(r.Start / r.Threshold)
 	own := Passage{x, d.Mu.Value, d.Variance.Value}
-	mu, variance := drawDrifts(p, d, o.Seed, o.Resamples)
+	mu, variance := drawDrifts(d, o.Seed, o.Resamples)
 	sample := make([]float64, o.Resamples)
 	around := func(value float64, of func(Passage) float64) Estimate {
 		for k := range sample {
@@ -80,8 +80,9 @@ func fitRisk(p *prepared, d *Drift, split *Split, o Options) *Risk {
 		r.ByHorizon = e
 	}
 	r.Ever = around(own.Ever(), Passage.Ever)
-	if split != nil && (split.Stated || split.Observation.Value > 0) {
-		r.Process = Passage{x, split.Mu.Value, split.Process.Value}.By(float64(o.Horizon))
+	if parted != nil {
+		from := parted.Last
+		r.Process = Passage{from.Log - math.Log(r.Threshold), parted.Mu.Value, parted.Process.Value}.ByFrom(float64(o.Horizon), from.Variance)
 	}
 	return r
 }

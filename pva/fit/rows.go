@@ -165,6 +165,8 @@ func (r *reading) row(s *Series, row []Cell, place func(int) spot) {
 		}
 		v, err := r.number(c.Text)
 		switch {
+		case r.semi && grouped.MatchString(c.Text):
+			r.fail(at, name, c.Text, "may be in thousands or a decimal number", "write "+strings.ReplaceAll(c.Text, ".", "")+", or "+strings.Replace(c.Text, ".", ",", 1)+" with a decimal comma")
 		case err != nil:
 			r.fail(at, name, c.Text, "is not a number", "give "+want)
 		case !(v >= low && v <= high):

@@ -22,6 +22,8 @@ type Split struct {
 	// Apart says whether process and observation error can be told apart: the
 	// interval of Share leaves out 0, or does not reach one half.
 	Apart bool
+	// Last is the abundance behind the last count with these variances.
+	Last State
 }
 
 // fitSplit fits by maximum likelihood or by its restricted form.
@@ -79,6 +81,7 @@ func (out *Split) finish(s *splitter, observation, confidence float64) {
 	z := normalQuantile(confidence)
 	out.Mu = Estimate{f.mu, f.mu - z*f.se, f.mu + z*f.se, f.se}
 	out.LogLik = s.best
+	out.Last = State{f.last, f.spread}
 }
 
 // splitter holds what the searches share.

@@ -27,8 +27,9 @@ func (b *caseWriter) explain() {
 	case r.separated() && !m.crowded:
 		b.how("Observation error (variance %.3g of a log count) is taken out of that variance.", r.Split.Observation.Value)
 	case m.crowded:
-		b.how("Observation error is not taken out: the regression does not part it from the weather.")
+		b.how("Observation error is not taken out: the regression does not part it from the weather, as the error of a count is in the growth from it and in the abundance beside it.")
 	}
+	b.explainStart()
 	if b.o.BreedingAssumed {
 		b.doubt("births are assumed to come once a %s: state --breeding pulse or --breeding flow", u)
 	}

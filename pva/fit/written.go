@@ -44,6 +44,9 @@ type Written struct {
 	Demographic float64 // the part of it that single births and deaths make
 	Weather     float64 // the rest
 	Off         float64 // root mean squared distance from the fitted curve
+
+	Start   float64 // mean abundance at the start, in whole units
+	StartCV float64 // its coefficient of variation, 0 for none
 }
 
 // Case makes a case that reproduces the fitted mean growth, variance and
@@ -55,6 +58,10 @@ func (r *Result) Case(o CaseOptions) (*Written, error) {
 	if err != nil {
 		return nil, err
 	}
+	start, cv := r.start(model)
+	if start < 1 {
+		return nil, fmt.Errorf("counts: the last one, %g, makes a start of less than one unit; count in smaller units", r.LastCount)
+	}
 	t := r.target(model, o)
 	if t.survival, err = r.survival(o, t); err != nil {
 		return nil, err
@@ -63,7 +70,7 @@ func (r *Result) Case(o CaseOptions) (*Written, error) {
 	if err != nil {
 		return nil, err
 	}
-	w := &Written{Model: model.Name, Survival: t.survival, Growth: math.NaN(), Variance: t.variance, Demographic: m.demography, Weather: m.weather, Off: m.off}
+	w := &Written{Model: model.Name, Survival: t.survival, Growth: math.NaN(), Variance: t.variance, Demographic: m.demography, Weather: m.weather, Off: m.off, Start: start, StartCV: cv}
 	if !m.crowded {
 		w.Growth = t.curve(1)
 	}
@@ -89,8 +96,6 @@ func (r *Result) caseModel(o CaseOptions) (*Model, error) {
 		return nil, fmt.Errorf("split: %g is not between 0 and 1; give the share of the variance that births have", o.Split)
 	case r.Counts < MinimumRisk:
 		return nil, fmt.Errorf("counts: %d are too few for a case (at least %d)", r.Counts, MinimumRisk)
-	case math.Round(r.LastCount) < 1:
-		return nil, fmt.Errorf("counts: the last one, %g, is less than one unit; count in smaller units", r.LastCount)
 	case len(r.ZeroYears) > 0 && r.ZeroYears[len(r.ZeroYears)-1] >= r.Last:
 		return nil, fmt.Errorf("counts: the last one is 0: there is no population to start from")
 	}
@@ -141,15 +146,6 @@ func (r *Result) target(model *Model, o CaseOptions) target {
 	t.variance = r.variance(model).Value
 	t.exponent = model.Theta
 	return t
-}
-
-// separated says whether observation error is taken out of the variance. A
-// fitted split that leaves no process variance at all is not followed: the
-// likelihood often peaks there by chance (B. Dennis et al. 2006, Ecol. Monogr.
-// 76:323-341), and a case without weather would be surer than the counts are.
-func (r *Result) separated() bool {
-	s := r.Split
-	return s.Stated || s.Observation.Value > 0 && s.Process.Value > 0
 }
 
 // growth is the drift in force: that of the state-space model where it takes
@@ -273,10 +269,7 @@ func (b *caseWriter) write() {
 	}
 	b.number("case.count_years", math.Round(r.Drift.Span)+1, src, "")
 	b.asked()
-	b.number("start.abundance", math.Round(r.LastCount), src, "the last count")
-	if cv := b.lastCV(); cv > 0 {
-		b.number("start.cv", cv, src, "error of the last count")
-	}
+	b.start()
 	if u == "year" && r.Last == math.Trunc(r.Last) {
 		b.number("start.year", r.Last+1, src, "the year after the last count")
 	}
@@ -315,16 +308,6 @@ func (b *caseWriter) asked() {
 	if o.Confidence != defaultConfidence {
 		b.number("question.confidence", o.Confidence, "stated for the fit", "")
 	}
-}
-
-// lastCV is the coefficient of variation of the last count: as stated, or from
-// the fitted observation variance.
-func (b *caseWriter) lastCV() float64 {
-	s := b.r.Split
-	if s.Stated {
-		return math.Min(10, b.r.Series.Counts[len(b.r.Series.Counts)-1].CV)
-	}
-	return math.Min(10, math.Sqrt(math.Expm1(s.Observation.Value)))
 }
 
 func (b *caseWriter) survivalSource() string {

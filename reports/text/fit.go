@@ -118,14 +118,23 @@ func modelRows(r *fit.Result) string {
 
 func splitRows(r *fit.Result) string {
 	s := r.Split
-	rows := [][]string{{"Process and observation error", "", "interval from the likelihood's profile"}}
+	rows := [][]string{{"Process and observation error", "", "interval by profile likelihood"}}
 	rows = append(rows, []string{"  process variance a " + r.Series.TimeUnit, figure(s.Process.Value), rangeOf(s.Process)})
 	if s.Stated {
 		rows = append(rows, []string{"  observation variance", "stated", ""})
 	} else {
 		rows = append(rows, []string{"  observation variance", figure(s.Observation.Value), rangeOf(s.Observation)})
 	}
-	return columns(rows, "", false, true) + wrap("(of log counts, by "+s.Method+")", "  ", 0)
+	note := "(of log counts, by " + s.Method + ")"
+	if at := r.State(); at != nil {
+		z := math.Sqrt2 * math.Erfinv(r.Options.Confidence) * math.Sqrt(at.Variance)
+		rows = append(rows, []string{"  abundance behind the last count", figure(at.Mean()), rangeOf(fit.Estimate{Low: math.Exp(at.Log - z), High: math.Exp(at.Log + z)})})
+		note = "(variances of log counts, by " + s.Method + "; the abundance by the Kalman filter)"
+	}
+	if g := r.Diagnostics.RunningSums; g != nil {
+		rows = append(rows, []string{"  process variance by running sums", figure(g.Variance), ""})
+	}
+	return columns(rows, "", false, true) + wrap(note, "  ", 0)
 }
 
 func riskRows(r *fit.Result) string {
@@ -136,11 +145,11 @@ func riskRows(r *fit.Result) string {
 	}
 	rows := [][]string{{"by the drift model", risk(k.ByHorizon.Value), risk(k.ByHorizon.Low) + " to " + risk(k.ByHorizon.High)}}
 	if !math.IsNaN(k.Process) {
-		rows = append(rows, []string{"with the process variance alone", risk(k.Process), ""})
+		rows = append(rows, []string{"without the errors of counting", risk(k.Process), ""})
 	}
 	rows = append(rows, []string{"ever", risk(k.Ever.Value), risk(k.Ever.Low) + " to " + risk(k.Ever.High)})
 	return wrap(head, "", 0) + columns(rows, "  ", false, true) +
-		wrap(fmt.Sprintf("(%.10g %% interval from %s resampled series; the formula watches at every moment and so overstates the risk of a population counted once a %s: Kendall 2009)", 100*r.Options.Confidence, reports.Grouped(int64(k.Resamples)), u), "  ", 0)
+		wrap(fmt.Sprintf("(%.10g %% interval from %s draws of drift and variance; the formula watches at every moment and so overstates the risk of a population counted once a %s: Kendall 2009)", 100*r.Options.Confidence, reports.Grouped(int64(k.Resamples)), u), "  ", 0)
 }
 
 // risk is a probability as percent in three digits; what no series can tell

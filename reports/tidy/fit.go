@@ -61,6 +61,8 @@ type fitWritten struct {
 	Variance    number   `json:"variance"`
 	Demographic number   `json:"demographic_variance"`
 	Weather     number   `json:"environmental_variance"`
+	Start       number   `json:"start_abundance"`
+	StartCV     number   `json:"start_cv"`
 	How         []string `json:"how"`
 }
 
@@ -112,6 +114,15 @@ func FitJSON(r *fit.Result, w *fit.Written, version string) ([]byte, error) {
 		Split: map[string]any{"method": r.Split.Method, "drift": number(r.Split.Mu.Value), "process_variance": number(r.Split.Process.Value),
 			"observation_variance": number(r.Split.Observation.Value), "log_likelihood": number(r.Split.LogLik), "stated_errors": r.Split.Stated, "told_apart": r.Split.Apart},
 		Warnings: []string{}}
+	for _, key := range []string{"last_abundance", "last_abundance_cv", "running_sums_variance"} {
+		d.Split[key] = nil
+	}
+	if at := r.State(); at != nil {
+		d.Split["last_abundance"], d.Split["last_abundance_cv"] = number(at.Mean()), number(at.CV())
+	}
+	if g := r.Diagnostics.RunningSums; g != nil {
+		d.Split["running_sums_variance"] = number(g.Variance)
+	}
 	if r.Best != "" {
 		d.Best = &r.Best
 	}
@@ -138,7 +149,7 @@ func FitJSON(r *fit.Result, w *fit.Written, version string) ([]byte, error) {
 		d.Warnings = append(d.Warnings, doubt.String())
 	}
 	if w != nil {
-		d.Case = &fitWritten{w.Model, number(w.Survival), number(w.Variance), number(w.Demographic), number(w.Weather), w.How}
+		d.Case = &fitWritten{w.Model, number(w.Survival), number(w.Variance), number(w.Demographic), number(w.Weather), number(w.Start), number(w.StartCV), w.How}
 		for _, doubt := range w.Doubts {
 			d.Warnings = append(d.Warnings, doubt.String())
 		}

@@ -70,3 +70,48 @@ func TestFitJSON(t *testing.T) {
 		t.Error("another seed gives the same bytes")
 	}
 }
+
+// TestFitJSONOutlying: a change among others that are all alike has a studentised
+// residual without bound; the document stays one, with the change in it.
+func TestFitJSONOutlying(t *testing.T) {
+	unbounded := false
+	for counts := 8; counts < 20; counts++ {
+		s := &fit.Series{File: "teal-lakes.csv", TimeUnit: "year"}
+		for i := range counts {
+			n := 96.0
+			if i >= 5 {
+				n = 24
+			}
+			s.Counts = append(s.Counts, fit.Count{Year: float64(1990 + i), Count: n})
+		}
+		r, err := fit.Fit(s, fit.Options{Resamples: 100})
+		if err != nil {
+			t.Fatal(err)
+		}
+		for _, o := range r.Diagnostics.Outlying {
+			unbounded = unbounded || math.IsInf(o.T, 0)
+		}
+		out, err := FitJSON(r, nil, "0")
+		if err != nil {
+			t.Fatal(err)
+		}
+		var got struct {
+			Residuals struct {
+				Outlying []struct {
+					To   float64
+					P    *float64
+					Kind string
+				}
+			}
+		}
+		if err := json.Unmarshal(out, &got); err != nil {
+			t.Fatal(err)
+		}
+		if o := got.Residuals.Outlying; len(o) != 1 || o[0].To != 1995 || o[0].Kind != "catastrophe" || o[0].P == nil || *o[0].P > 1e-6 {
+			t.Errorf("%d counts: %+v", counts, o)
+		}
+	}
+	if !unbounded {
+		t.Error("no residual was without bound")
+	}
+}
