@@ -74,6 +74,10 @@ func (k *Key) Range() string {
 	return kind
 }
 
+// tiniest is the smallest number but 0 that a case may hold: nothing in nature is
+// as small, and what is made of much smaller ones has no digits left.
+const tiniest = 1e-30
+
 // Asks says in words what is to be given under the key.
 func (k *Key) Asks() string { return k.asks }
 
@@ -130,6 +134,8 @@ func (k *Key) offends(v float64) string {
 		return "is not below " + plainNumber(k.Max)
 	case k.Whole && v != math.Trunc(v):
 		return "is not a whole number"
+	case v != 0 && math.Abs(v) < tiniest:
+		return "is nearer to 0 than " + plainNumber(tiniest)
 	}
 	return ""
 }

@@ -128,3 +128,13 @@ func TestDefaultsAreAllowed(t *testing.T) {
 		}
 	}
 }
+
+// TestTiniest: a number too small to have digits is refused; 0 is not.
+func TestTiniest(t *testing.T) {
+	k, _ := Find("births.rate")
+	for v, want := range map[float64]string{0: "", 1e-30: "", 5e-324: "is nearer to 0 than 1e-30", 9e-31: "is nearer to 0 than 1e-30"} {
+		if got := k.offends(v); got != want {
+			t.Errorf("%v %s, want %q", v, got, want)
+		}
+	}
+}

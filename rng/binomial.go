@@ -15,34 +15,34 @@ const (
 
 	// Crossings, measured; see BenchmarkBinomialWays.
 	binomialWordsTo   = 6    // up to here one word a trial
-	binomialDigitsTo  = 511  // up to here by the digits of p
+	binomialFewTo     = 128  // up to here the ways of few trials
+	binomialDigitsTo  = 447  // up to here by the digits of p
 	binomialInverseTo = 0.25 // below this np no other way is quicker
+	binomialScatterTo = 0.25 // below this np^2 two hits seldom meet, quicker than digits
+	binomialMeetTo    = 0.6  // the same against rejection
 
 	// binomialLeast is the smallest p whose digits all lie within a word of 64.
 	binomialLeast = 0x1p-11
-
-	// binomialRejectFrom is the mean from which on the transformed rejection is
-	// valid (Hormann 1993).
-	binomialRejectFrom = 10
 )
 
 // Binomial draws the number of successes in n independent trials of chance p,
 // for n from 0 to MaxTrials and p from 0 to 1. With n = 0, p = 0 or p = 1 it
 // uses no words. It panics on anything else.
 //
-// For n up to 511 it compares the trials with p digit by binary digit, unless a
-// success is so rare that inversion of the distribution function is quicker;
-// above, it inverts if min(np, n(1-p)) < 10 and otherwise uses Hormann's
-// transformed rejection.
+// With q the smaller of p and 1-p: where a success is so rare that there is seldom
+// one it inverts the distribution function; of many trials of which few succeed it
+// scatters Poisson hits; up to 447 trials it compares with p digit by binary digit
+// what stands for a uniform number of each; beyond, it uses Hormann's transformed
+// rejection.
 func Binomial(s *Stream, n int64, p float64) int64 {
 	switch {
 	case !(p > 0 && p < 1 && n > 0 && n <= MaxTrials):
 		return binomialEdge(n, p)
-	case n > binomialDigitsTo:
+	case n > binomialFewTo:
 		if p <= 0.5 {
-			return binomialLarge(s, n, p)
+			return binomialMany(s, n, p)
 		}
-		return n - binomialLarge(s, n, 1-p) // 1 - p is exact
+		return n - binomialMany(s, n, 1-p) // 1 - p is exact
 	case p < binomialLeast:
 		return binomialInverse(s, n, p)
 	case n <= binomialWordsTo:
@@ -65,9 +65,19 @@ func binomialEdge(n int64, p float64) int64 {
 	return 0
 }
 
-func binomialLarge(s *Stream, n int64, p float64) int64 {
-	if float64(float64(n)*p) < binomialRejectFrom {
+// binomialMany is for n > 128 and p <= 1/2. Digits come only where p is above
+// 0.02, and rejection only where np is above 16.
+func binomialMany(s *Stream, n int64, p float64) int64 {
+	np := float64(float64(n) * p)
+	switch {
+	case np < binomialInverseTo:
 		return binomialInverse(s, n, p)
+	case float64(np*p) < binomialScatterTo:
+		return binomialScatter(s, n, p)
+	case n <= binomialDigitsTo:
+		return binomialDigits(s, n, p)
+	case float64(np*p) < binomialMeetTo:
+		return binomialScatter(s, n, p)
 	}
 	return binomialReject(s, n, p)
 }
@@ -88,27 +98,31 @@ func binomialWords(s *Stream, n int64, p float64) int64 {
 
 // binomialDigits does the same, but draws the uniform numbers a binary digit at
 // a time: at a digit 1 of p the trials with digit 0 are successes and leave, at
-// a digit 0 those with digit 1 are failures and leave. As long as more than 64
+// a digit 0 those with digit 1 are failures and leave. As long as more than 32
 // trials are undecided only their number is kept; then a bit of a mask stands
-// for each; and when the mask must be nearly empty, those left get the rest of
-// their digits in one word. A trial that agrees with p to the end is not below
-// it.
+// for each, and a word holds two digits of all; and when the mask must be nearly
+// empty, those left get the rest of their digits in one word. A trial that agrees
+// with p to the end is not below it.
 func binomialDigits(s *Stream, n int64, p float64) int64 {
 	digits := uint64(float64(p * 0x1p64))
 	x := int64(0)
-	for n > 64 {
+	for n > 32 {
 		h := halves(s, n)
 		x += (n - h) & (int64(digits) >> 63)
 		n = h
 		digits <<= 1
 	}
-	open := ^uint64(0) >> uint(64-n)
-	for i := bits.Len64(uint64(n)); i > 0; i-- {
+	open := uint64(1)<<uint(n) - 1
+	for i := bits.Len64(uint64(n)); i > 0; i -= 2 {
 		w := s.pcg.Uint64()
 		one := uint64(int64(digits) >> 63) // all bits set at a digit 1
 		x += int64(bits.OnesCount64(open &^ w & one))
 		open &= w ^ ^one
-		digits <<= 1
+		w >>= 32
+		one = uint64(int64(digits<<1) >> 63)
+		x += int64(bits.OnesCount64(open &^ w & one))
+		open &= w ^ ^one
+		digits <<= 2
 	}
 	for ; open != 0; open &= open - 1 {
 		if s.pcg.Uint64() < digits {
@@ -119,7 +133,7 @@ func binomialDigits(s *Stream, n int64, p float64) int64 {
 }
 
 // binomialInverse inverts the distribution function from 0 upwards, for p <=
-// 1/2 and np < 10: it subtracts the probabilities of 1, 2, ... from the chance
+// 1/2 and small np: it subtracts the probabilities of 1, 2, ... from the chance
 // of more than 0, which keeps its relative accuracy however small it is.
 func binomialInverse(s *Stream, n int64, p float64) int64 {
 	nf := float64(n)
@@ -152,7 +166,7 @@ func walkUp(u, more, at, top, ratio float64) int64 {
 }
 
 // binomialReject is algorithm BTRS of Hormann (1993, J. Stat. Comput. Simul.
-// 46:101), for p <= 1/2 and np >= 10. It departs from the source in the last
+// 46:101), valid for p <= 1/2 and np >= 10. It departs from the source in the last
 // step only: the ratio of the probabilities of k and of the mode is computed
 // by Loader's form.
 func binomialReject(s *Stream, n int64, p float64) int64 {
@@ -171,10 +185,34 @@ func binomialReject(s *Stream, n int64, p float64) int64 {
 		}
 		m := math.Floor(float64((nf + 1) * p))
 		v = float64(v*h.binomialScale()) / (h.a/float64(us*us) + h.b)
+		if middle, margin := binomialBounds(k-m, float64(nf*p)*(1-p)); margin < 1 {
+			if v <= float64(middle*(1-margin)) {
+				return int64(k)
+			}
+			if float64(v*(1-margin)) > middle {
+				continue
+			}
+		}
 		if v <= binomialRatio(k, m, nf, p) {
 			return int64(k)
 		}
 	}
+}
+
+// binomialBounds encloses the ratio of the probabilities at a distance from the
+// mode and at the mode: it lies between middle (1 - margin) and middle / (1 -
+// margin) if the margin is below 1. The logarithm of the ratio differs from that
+// of a normal density by less than margin, by a bound of Kachitvichyanukul &
+// Schmeiser (1988, Commun. ACM 31:216, step 5.2), which is given for distances
+// above 20 there and holds from 1 on (its test looks at each); exp(x) >= 1 + x.
+func binomialBounds(distance, variance float64) (middle, margin float64) {
+	d := math.Abs(distance)
+	if d >= variance/2-1 {
+		return 0, 1
+	}
+	share := d / variance
+	inner := (float64((d/3+0.625)*d) + 1.0/6) / variance
+	return portable.Exp(-0.5 * float64(d*share)), float64(1.001 * float64(share*(inner+0.5)))
 }
 
 // hat holds the constants of a transformed rejection in Hormann's letters:

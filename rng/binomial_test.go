@@ -6,8 +6,8 @@ import (
 )
 
 var (
-	binomialTrials  = []int64{1, 2, 5, 63, 64, 65, 256, 257, 400, 511, 512, 2000, 4096, 100000, 1 << 33}
-	binomialChances = []float64{1e-9, 1e-3, 0.02, 0.1, 0.3, 0.5, 0.9, 1 - 1e-9}
+	binomialTrials  = []int64{1, 2, 5, 7, 32, 33, 64, 65, 128, 129, 400, 447, 448, 590, 2000, 100000, 1 << 33}
+	binomialChances = []float64{1e-9, 1e-3, 0.02, 0.03, 0.1, 0.3, 0.5, 0.9, 1 - 1e-9}
 )
 
 func binomialCells() int { return len(binomialTrials) * len(binomialChances) }

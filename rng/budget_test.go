@@ -30,6 +30,7 @@ var shares = map[string]int{
 	"negative":         3 * len(negativeCells),
 	"geometrics":       3 * len(geometricsCells),
 	"continuous":       2 * len(continuousLaws),
+	"event":            2 * len(eventChances),
 	"normal tail":      1,
 	"tail counts":      2,
 	"round":            len(roundCells),

@@ -29,9 +29,15 @@ func Exponential(s *Stream) float64 {
 			tail += exponentialFrom
 			continue
 		}
-		y := z.at[i] + float64(s.Float64()*(z.at[i+1]-z.at[i]))
-		if y < portable.Exp(-x) {
+		if inLayer(s, i, x) {
 			return tail + x
 		}
 	}
+}
+
+// inLayer draws a height in layer i and says whether the density is above it at x.
+func inLayer(s *Stream, i uint64, x float64) bool {
+	z := exponentialTable
+	y := z.at[i] + float64(s.Float64()*(z.at[i+1]-z.at[i]))
+	return y < portable.Exp(-x)
 }

@@ -2,33 +2,40 @@ package rng
 
 import "math/bits"
 
-// halfTable draws from Binomial(256, 1/2), less what lies beyond 0 and 255
-// (2^-256 each).
-var halfTable = buildHalfTable()
+// halfTables[j] draws from Binomial(64j, 1/2), j = 1 to 7, less halfFrom[j]; what
+// lies beyond its 256 values has a chance below 2^-64.
+var halfTables, halfFrom = buildHalfTables()
 
-func buildHalfTable() *alias256 {
-	var rel [256]wide
-	rel[128] = wide{1 << 40, 0}
-	for k := 128; k > 0; k-- { // C(256, k-1) = C(256, k) k / (257-k)
-		rel[k-1] = rel[k].mulDiv(uint64(k), uint64(257-k))
+func buildHalfTables() (*[8]alias256, [8]int64) {
+	t := new([8]alias256)
+	var from [8]int64
+	for j := 1; j < len(t); j++ {
+		n := 64 * j
+		mode := n / 2
+		low := max(0, mode-128) // the value of cell 0
+		from[j] = int64(low)
+		var rel [256]wide
+		rel[mode-low] = wide{1 << 40, 0}
+		for k := mode; k > low; k-- { // C(n, k-1) = C(n, k) k / (n-k+1)
+			rel[k-1-low] = rel[k-low].mulDiv(uint64(k), uint64(n-k+1))
+		}
+		for k := mode + 1; k <= n && k-low < len(rel); k++ {
+			if mirror := n - k - low; mirror >= 0 {
+				rel[k-low] = rel[mirror]
+			}
+		}
+		fillAlias(t[j][:], unitWeights(rel[:], mode-low))
 	}
-	for k := 129; k < 256; k++ {
-		rel[k] = rel[256-k]
-	}
-	t := new(alias256)
-	fillAlias(t[:], unitWeights(rel[:], 128))
-	return t
+	return t, from
 }
 
-// halves draws from Binomial(k, 1/2) for k >= 0: by the table for each full
-// 256 trials, by counting the bits of words for what is left.
+// halves draws from Binomial(k, 1/2) for k from 0 to 511: by a table for the full
+// 64s of trials, by counting the bits of a word for what is left.
 func halves(s *Stream, k int64) int64 {
 	h := int64(0)
-	for ; k >= 256; k -= 256 {
-		h += halfTable.draw(s.pcg.Uint64())
-	}
-	for ; k >= 64; k -= 64 {
-		h += int64(bits.OnesCount64(s.pcg.Uint64()))
+	if j := k >> 6; j > 0 {
+		h += halfFrom[j&7] + halfTables[j&7].draw(s.pcg.Uint64())
+		k &= 63
 	}
 	if k > 0 {
 		h += int64(bits.OnesCount64(s.pcg.Uint64() << uint(64-k)))

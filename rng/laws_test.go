@@ -133,7 +133,8 @@ func fit(t *testing.T, l law, n int, draw func() int64) (shape, remainder, mean 
 
 	error1 := l.spread / math.Sqrt(float64(n))
 	mean = 1
-	if l.mean*float64(n) >= 1000 { // else too few events for a normal mean
+	// else too few events, or too few that fail, for a normal mean
+	if math.Min(l.mean, l.spread*l.spread)*float64(n) >= 1000 {
 		mean = twoSided(sum / float64(n) / error1)
 	}
 	t.Logf("%d draws, %d bins, catches a bias of the mean of %.2g of it; p %.3f %.3f %.3f",

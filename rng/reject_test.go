@@ -28,7 +28,7 @@ func TestBinomialHatAndSqueeze(t *testing.T) {
 	for _, p := range []float64{0.5, 0.4, 0.3, 0.1, 0.02, 1e-3, 1e-6} {
 		for _, np := range []float64{10, 10.5, 12, 15, 20, 33.3, 60, 150, 1000, 20000, 1e7} {
 			n := math.Round(np / p)
-			if n*p < binomialRejectFrom {
+			if n*p < 10 {
 				n++
 			}
 			l := binomialLaw(int64(n), p)
@@ -52,6 +52,45 @@ func TestBinomialHatAndSqueeze(t *testing.T) {
 				t.Errorf("n = %v, p = %v: highest %v (want at most 1), lowest %v (want at least %v)", n, p, highest, lowest, h.vr)
 			}
 		}
+	}
+}
+
+// TestBinomialBounds: at every distance from the mode, on both sides, the ratio of
+// probabilities lies within the bounds that settle most rejections. The source
+// gives them for distances above 20 alone.
+func TestBinomialBounds(t *testing.T) {
+	looked, narrowest := 0, 1.0
+	for _, n := range []float64{21, 25, 40, 64, 100, 200, 448, 700, 1000, 3000, 10000, 1e5, 1e7} {
+		for i := range 40 {
+			p := 10/n + (0.5-10/n)*float64(i)/39
+			if p > 0.5 {
+				continue
+			}
+			l := binomialLaw(int64(n), p)
+			mode := math.Floor((n + 1) * p)
+			peak, variance := l.at(int64(mode)), n*p*(1-p)
+			reach := 9 * math.Sqrt(variance)
+			for d := 1.0; d <= reach; d += math.Max(1, math.Floor(reach/500)) {
+				for _, k := range []float64{mode - d, mode + d} {
+					if k < 0 || k > n {
+						continue
+					}
+					middle, margin := binomialBounds(k-mode, variance)
+					if margin >= 1 {
+						continue
+					}
+					looked++
+					r := l.at(int64(k)) / peak
+					narrowest = math.Min(narrowest, margin)
+					if r < middle*(1-margin) || r*(1-margin) > middle {
+						t.Fatalf("n = %v, p = %v: at %v from the mode the ratio is %v, outside of %v and %v", n, p, k-mode, r, middle*(1-margin), middle/(1-margin))
+					}
+				}
+			}
+		}
+	}
+	if looked < 100000 || narrowest > 1e-6 {
+		t.Errorf("only %d ratios were looked at, with margins from %v", looked, narrowest)
 	}
 }
 

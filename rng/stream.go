@@ -22,13 +22,14 @@ type Purpose uint8
 const (
 	Start        Purpose = iota + 1 // starting abundance
 	Weather                         // good and bad years
-	Catastrophes                    // whether they strike and how many they kill
+	Catastrophes                    // whether they strike
 	Demography                      // births and deaths of single animals
 	Survey                          // errors of abundance estimates
 	Taking                          // errors and rounding of takes
 	Stocking                        // animals released
 	Inputs                          // outer draws of uncertain inputs
-	Resample                        // bootstrap in fitting
+	Resample                        // draws behind the intervals of fitted risks
+	Kills                           // how many a catastrophe kills
 )
 
 // Stream is a source of random words: PCG-XSL-RR 128/64 (O'Neill 2014,

@@ -1,6 +1,7 @@
 package rng
 
 import (
+	"fmt"
 	"math"
 	"math/big"
 	"testing"
@@ -40,11 +41,18 @@ func holdTable(t *testing.T, name string, entry []uint64, b uint, want func(k in
 	}
 }
 
-func TestHalfTable(t *testing.T) {
-	holdTable(t, "Binomial(256, 1/2)", halfTable[:], 8, func(k int) *big.Float {
-		c := new(big.Float).SetPrec(300).SetInt(new(big.Int).Binomial(256, int64(k)))
-		return c.SetMantExp(c, -256)
-	})
+func TestHalfTables(t *testing.T) {
+	for j := 1; j < len(halfTables); j++ {
+		n := int64(64 * j)
+		holdTable(t, fmt.Sprintf("Binomial(%d, 1/2)", n), halfTables[j][:], 8, func(cell int) *big.Float {
+			k := int64(cell) + halfFrom[j]
+			if k > n {
+				return new(big.Float)
+			}
+			c := new(big.Float).SetPrec(600).SetInt(new(big.Int).Binomial(n, k))
+			return c.SetMantExp(c, -int(n))
+		})
+	}
 }
 
 func TestPoissonTables(t *testing.T) {
@@ -71,13 +79,13 @@ func TestPoissonTables(t *testing.T) {
 // A word chooses as the entry says: both sides of the threshold of a cell.
 func TestAliasDraw(t *testing.T) {
 	for _, i := range []uint64{0, 100, 128, 255} {
-		e := halfTable[i]
+		e := halfTables[4][i]
 		threshold, other := e>>8, int64(e&255)
-		if got := halfTable.draw(threshold<<8 | i); got != other {
+		if got := halfTables[4].draw(threshold<<8 | i); got != other {
 			t.Errorf("cell %d at its threshold gives %d, want the alias %d", i, got, other)
 		}
 		if threshold > 0 {
-			if got := halfTable.draw((threshold-1)<<8 | i); got != int64(i) {
+			if got := halfTables[4].draw((threshold-1)<<8 | i); got != int64(i) {
 				t.Errorf("cell %d below its threshold gives %d", i, got)
 			}
 		}

@@ -35,11 +35,16 @@ func newCrowding(c pva.Crowding) Crowding {
 // 1 - (n/L)^exponent (Gilpin & Ayala 1973), both not below 0; exp(-n/L)
 // (Ricker 1954); 1/(1 + n/L) (Beverton & Holt 1957).
 func (c Crowding) Births(n float64) float64 {
+	if c.Form == Linear { // the usual one, in line with its caller
+		return max(0, 1-n/c.L)
+	}
+	return c.otherBirths(n)
+}
+
+func (c Crowding) otherBirths(n float64) float64 {
 	switch c.Form {
-	case Linear:
-		return math.Max(0, 1-n/c.L)
 	case Theta:
-		return math.Max(0, 1-portable.Pow(n/c.L, c.Exponent))
+		return max(0, 1-portable.Pow(n/c.L, c.Exponent))
 	case Ricker:
 		return portable.Exp(-n / c.L)
 	case Hyperbolic:
@@ -50,6 +55,13 @@ func (c Crowding) Births(n float64) float64 {
 
 // Deaths is the factor on deaths per head: 1; 1 + n/L; 1 + (n/L)^exponent.
 func (c Crowding) Deaths(n float64) float64 {
+	if c.Form == None {
+		return 1
+	}
+	return c.crowdedDeaths(n)
+}
+
+func (c Crowding) crowdedDeaths(n float64) float64 {
 	switch c.Form {
 	case Linear:
 		return 1 + n/c.L
@@ -124,6 +136,13 @@ func newScarcity(s pva.Scarcity) Scarcity {
 
 // Factor is 1, n/A or n/(A+n).
 func (s Scarcity) Factor(n float64) float64 {
+	if s.Form == Plenty {
+		return 1
+	}
+	return s.scarce(n)
+}
+
+func (s Scarcity) scarce(n float64) float64 {
 	switch s.Form {
 	case Proportional:
 		return n / s.A

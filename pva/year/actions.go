@@ -16,6 +16,20 @@ func harvest(m *rates.Model, rule int) pass {
 	h := t.Rule
 	eachAnimal := math.Min(1, h.Fraction.Value*h.Share)
 	leave := int64(math.Ceil(h.Leave))
+	// A take that asks for a number whatever is seen, and makes no error.
+	fixed := (h.Rule == "constant" || h.Rule == "by_year") && h.TakeNoise != "each-animal" && h.TakeNoise != "poisson" && t.Error.Sigma == 0
+	intends := func(b *block, i, y int, seen float64) int64 { // 4 to 7: rule, share, error, rounding
+		target := t.Target(y, seen)
+		switch {
+		case h.TakeNoise == "each-animal":
+			return rng.Binomial(&b.taking[i], b.n[i], eachAnimal)
+		case h.TakeNoise == "poisson":
+			return rng.Poisson(&b.taking[i], math.Min(target, most))
+		case t.Error.Sigma != 0:
+			target *= t.Error.Factor(rng.Normal(&b.taking[i]))
+		}
+		return rng.Round(&b.taking[i], math.Min(target, most))
+	}
 	return func(b *block, y int) {
 		seen := &b.seen[rule]
 		if t.Surveyed[y-1] { // 2: seen
@@ -33,6 +47,11 @@ func harvest(m *rates.Model, rule int) pass {
 		if !t.Scheduled[y-1] { // 1: scheduled
 			return
 		}
+		asked := 0.0
+		if fixed { // the same for all lanes
+			asked = min(t.Target(y, 0), most)
+		}
+		whole := fixed && asked == math.Trunc(asked)
 		for i := 0; i < b.lanes; i++ {
 			if b.isOutgrown(i) {
 				continue
@@ -41,18 +60,9 @@ func harvest(m *rates.Model, rule int) pass {
 				b.row.Closed |= 1 << uint(i)
 				continue
 			}
-			target := t.Target(y, seen[i]) // 4, 5: rule and share
-			var intended int64
-			switch { // 6, 7: error and rounding
-			case h.TakeNoise == "each-animal":
-				intended = rng.Binomial(&b.taking[i], b.n[i], eachAnimal)
-			case h.TakeNoise == "poisson":
-				intended = rng.Poisson(&b.taking[i], math.Min(target, most))
-			case t.Error.Sigma != 0:
-				target *= t.Error.Factor(rng.Normal(&b.taking[i]))
-				fallthrough
-			default:
-				intended = rng.Round(&b.taking[i], math.Min(target, most))
+			intended := int64(asked)
+			if !whole {
+				intended = intends(b, i, y, seen[i])
 			}
 			n := b.n[i]
 			made := min(intended, max(0, n-leave)) // 8: made

@@ -32,8 +32,9 @@ type Engine struct {
 // needs says which shared numbers any variant uses; what none uses is not drawn.
 type needs struct {
 	weather      bool
-	catastrophes int // one uniform and one normal each a year
-	surveys      int // one normal each a year
+	catastrophes int  // one uniform each a year
+	kills        bool // one normal each a year too
+	surveys      int  // one normal each a year
 }
 
 // New compiles the variants. The first is the case that the others are
@@ -51,6 +52,9 @@ func New(seed uint64, variants ...*rates.Model) (*Engine, error) {
 		e.horizon = max(e.horizon, h)
 		e.needs.weather = e.needs.weather || m.Birth.Sigma != 0 || m.Death.Varies()
 		e.needs.catastrophes = max(e.needs.catastrophes, len(m.Case.Catastrophe))
+		for i := range m.Kills {
+			e.needs.kills = e.needs.kills || m.Kills[i].V != 0
+		}
 		for i := range m.Takes {
 			if m.Takes[i].Survey.Sigma != 0 {
 				e.needs.surveys = max(e.needs.surveys, len(m.Takes))

@@ -64,9 +64,18 @@ func newOdds(m *rates.Model, t table) []odds {
 	for n := range out {
 		birth := float64(m.Birth.Mean * b * t.birth[n])
 		sum := birth + float64(m.Death.Mean()*d*t.death[n])
-		out[n] = odds{1 / sum, birth / sum}
+		out[n] = oddsOf(birth, sum)
 	}
 	return out
+}
+
+// oddsOf is what the next event is where births and all events have these rates;
+// where nothing can happen the wait has no end.
+func oddsOf(birth, sum float64) odds {
+	if sum == 0 {
+		return odds{wait: math.Inf(1)}
+	}
+	return odds{1 / sum, birth / sum}
 }
 
 // total is births and deaths of the whole population at n in this year of lane i.
@@ -159,9 +168,8 @@ func uniform(word uint64) float64 { return float64(word>>11) * 0x1p-53 }
 
 // together is events for all lanes at once where births and deaths are the only
 // events: the lanes take an event each in turn, so that the processor works on
-// many at a time, and a birth or death is a selection and not a jump. A lane
-// draws the same numbers as in events. A lane whose N leaves the table goes on
-// by itself.
+// many at a time, and a birth or death is a selection and not a jump. An event is
+// mostly made of one word. A lane whose N leaves the table goes on by itself.
 func (f *flow) together(b *block, y int) {
 	var t [lanesMax]float64
 	var racing [lanesMax]uint8
@@ -193,16 +201,17 @@ func (f *flow) together(b *block, y int) {
 			} else {
 				birth := float64(b.birth[i] * births[n])
 				sum := birth + float64(b.death[i]*deaths[n])
-				o = odds{1 / sum, birth / sum}
+				o = oddsOf(birth, sum)
 			}
-			t[i] += float64(rng.Exponential(&b.demography[i]) * o.wait)
+			wait, born := rng.Event(&b.demography[i], o.birth)
+			t[i] += float64(wait * o.wait)
 			if !(t[i] < 1) { // also where nothing can happen any more
 				active[k] = active[len(active)-1]
 				active = active[:len(active)-1]
 				continue
 			}
 			step := int64(-1)
-			if uniform(b.demography[i].Uint64()) < o.birth {
+			if born {
 				step = 1
 			}
 			n += step

@@ -169,26 +169,28 @@ func (f *flow) lane(b *block, i, y int, t float64, events int, streams []rate, a
 		// The next point of the year's own grid, so that a lane that comes from
 		// events meets it again.
 		k = int(t/step) + 1
-		dt := math.Min(float64(k)*step, 1) - t
+		dt := min(float64(k)*step, 1) - t
 		if dt < 1e-12 {
-			dt = math.Min(float64(k+1)*step, 1) - t
+			dt = min(float64(k+1)*step, 1) - t
 		}
 		if f.adaptive {
 			if r := f.m.BirthAt(b.birth[i], float64(n)) + f.m.DeathAt(b.death[i], float64(n)); r*dt > 0.1 {
-				dt = math.Max(0.1/r, 1e-7)
+				dt = max(0.1/r, 1e-7)
 			}
 			// Streams move N by at most a hundredth of it in a sub-step.
 			most := float64(0.01*float64(n)) + 1
 			if moved := streamed(streams, n); moved*dt > most {
-				dt = math.Max(most/moved, 1e-7)
+				dt = max(most/moved, 1e-7)
 			}
 		}
 		if len(streams) == 0 {
 			f.jump(b, i, s, dt)
 		} else {
 			f.jump(b, i, s, dt/2)
-			f.flowStreams(b, i, streams, dt)
-			f.jump(b, i, s, dt/2)
+			if b.n[i] <= b.program.stopAbove { // nothing is taken from what has outgrown
+				f.flowStreams(b, i, streams, dt)
+				f.jump(b, i, s, dt/2)
+			}
 		}
 		if b.n[i] > b.program.stopAbove {
 			b.outgrow(i)
@@ -253,11 +255,11 @@ func (f *flow) jump(b *block, i int, s *rng.Stream, tau float64) {
 	at := float64(n)
 	if f.m.BirthCrowding.Form != rates.None || f.m.Scarcity.Form != rates.Plenty || f.m.DeathCrowding.Form != rates.None {
 		growth := f.m.BirthAt(b.birth[i], at) - f.m.DeathAt(b.death[i], at)
-		at *= 1 + math.Max(-0.5, math.Min(0.5, growth*tau/2))
+		at *= 1 + max(-0.5, min(0.5, growth*tau/2))
 	}
 	birth, death := f.m.BirthAt(b.birth[i], at), f.m.DeathAt(b.death[i], at)
 	x := (birth - death) * tau
-	if x > 30 || float64(n)*portable.Exp(x) > float64(b.program.stopAbove) {
+	if x > 30 || float64(float64(n)*outgrowing(x)) > float64(b.program.stopAbove) && float64(float64(n)*portable.Exp(x)) > float64(b.program.stopAbove) {
 		b.n[i] = math.MaxInt64 / 2 // its mean has outgrown: model, auto sub-steps
 		return
 	}
@@ -266,11 +268,19 @@ func (f *flow) jump(b *block, i int, s *rng.Stream, tau float64) {
 		g = tau * portable.Expm1(x) / x
 	}
 	bg := float64(birth * g)
-	survivors := rng.Binomial(s, n, 1-math.Min(1, death*g/(1+bg)))
+	survivors := rng.Binomial(s, n, 1-min(1, death*g/(1+bg)))
 	b.n[i] = survivors
 	if bg > 0 {
 		b.n[i] += rng.BirthGeometrics(s, survivors, bg/(1+bg))
 	}
+}
+
+// outgrowing is at least exp(x) for x up to 30, and quickly had.
+func outgrowing(x float64) float64 {
+	if x < 1 {
+		return math.E
+	}
+	return 2e13
 }
 
 // flowStreams lets the streams act for tau at once, counted exactly.

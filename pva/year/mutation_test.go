@@ -111,7 +111,7 @@ func before(p *program, i int, f pass) {
 	p.passes = append(p.passes[:i:i], append([]pass{f}, p.passes[i:]...)...)
 }
 
-// mutantCase uses each part that a mutation touches, strongly enough for 40,000
+// mutantCase uses each part that a mutation touches, strongly enough for 60,000
 // replicates to see it.
 func mutantCase(t testing.TB) *pva.Case {
 	return caseOf(t, "question.threshold", 25, "question.horizon", 10, "start.abundance", 60, "start.cv", .3, "births.breeding", "pulse", "births.rate", .55, "births.year_sd", .3, "births.trend", -.03,
@@ -122,7 +122,7 @@ func mutantCase(t testing.TB) *pva.Case {
 }
 
 func TestMutationsAreCaught(t *testing.T) {
-	const n, level = 40000, 1e-7
+	const n, level = 60000, 1e-7
 	c := mutantCase(t)
 	m, faults := rates.New(c)
 	if len(faults) > 0 {

@@ -53,7 +53,8 @@ func survive(m *rates.Model) pass {
 // crowding and scarcity seen at the number of breeders.
 func breed(m *rates.Model) pass {
 	crowded := m.BirthCrowding.Form != rates.None || m.Scarcity.Form != rates.Plenty
-	law, clumping := m.Case.Births.Offspring, m.Case.Births.Clumping.Value
+	atMostOne, clumped := m.Case.Births.Offspring == "at-most-one", m.Case.Births.Offspring == "clumped"
+	clumping := m.Case.Births.Clumping.Value
 	return func(b *block, _ int) {
 		for i := 0; i < b.lanes; i++ {
 			parents := b.breeders[i]
@@ -69,14 +70,14 @@ func breed(m *rates.Model) pass {
 				b.n[i] = math.MaxInt64 / 2 // surely outgrown: no draw needed
 				continue
 			}
-			switch law {
-			case "at-most-one":
+			switch {
+			case atMostOne:
 				if f > 1 {
 					f = 1
 					b.capped++
 				}
 				b.n[i] += rng.Binomial(&b.demography[i], parents, f)
-			case "clumped":
+			case clumped:
 				// A sum of S laws of size k each is one of size k S; of a size so
 				// large that its variance is its mean, it is Poisson.
 				if size := clumping * float64(parents); size <= 1e12 && mean <= 1e12 {

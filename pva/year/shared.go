@@ -6,13 +6,14 @@ import "ebbline/rng"
 // have in common. They are drawn every year whether used or not, so that cases
 // that differ in a take or a rate share their years.
 type shared struct {
-	needs                        needs
-	lanes                        int
-	weather, catastrophe, survey [lanesMax]rng.Stream
-	u1, u2                       [lanesMax]float64   // innovations of the weather
-	strikes                      [][lanesMax]float64 // uniform, one a catastrophe
-	kills                        [][lanesMax]float64 // normal, one a catastrophe
-	surveys                      [][lanesMax]float64 // normal, one a harvest rule
+	needs                needs
+	lanes                int
+	weather, catastrophe [lanesMax]rng.Stream
+	killing, survey      [lanesMax]rng.Stream
+	u1, u2               [lanesMax]float64   // innovations of the weather
+	strikes              [][lanesMax]float64 // uniform, one a catastrophe
+	kills                [][lanesMax]float64 // normal, one a catastrophe
+	surveys              [][lanesMax]float64 // normal, one a harvest rule
 }
 
 func newShared(n needs) *shared {
@@ -26,14 +27,15 @@ func (s *shared) begin(seed uint64, first, step int64, lanes int) {
 		r := uint64(first + int64(i)*step)
 		s.weather[i].Seed(seed, r, rng.Weather)
 		s.catastrophe[i].Seed(seed, r, rng.Catastrophes)
+		s.killing[i].Seed(seed, r, rng.Kills)
 		s.survey[i].Seed(seed, r, rng.Survey)
 	}
 }
 
-// draw draws one year: two normals of weather, then for each catastrophe a
-// uniform and a normal, then a normal for each harvest rule. Weather and surveys
-// have streams of their own, so that not drawing what no variant uses changes
-// nothing for any.
+// draw draws one year: two normals of weather, for each catastrophe a uniform
+// and a normal, and a normal for each harvest rule. All but the uniforms are drawn
+// only if a variant uses any of their kind: each kind has a stream of its own, so
+// that not drawing it changes nothing for the others.
 func (s *shared) draw() {
 	if s.needs.weather {
 		for i := 0; i < s.lanes; i++ {
@@ -45,8 +47,10 @@ func (s *shared) draw() {
 		for i := 0; i < s.lanes; i++ {
 			s.strikes[c][i] = s.catastrophe[i].Float64()
 		}
-		for i := 0; i < s.lanes; i++ {
-			s.kills[c][i] = rng.Normal(&s.catastrophe[i])
+		if s.needs.kills {
+			for i := 0; i < s.lanes; i++ {
+				s.kills[c][i] = rng.Normal(&s.killing[i])
+			}
 		}
 	}
 	for r := range s.surveys {
