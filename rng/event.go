@@ -7,14 +7,16 @@ const (
 	choiceSteps = 1 << choiceBits
 )
 
-// eventStep is the width of a place: an edge of the exponential's ziggurat cut
-// into 2^44.
-var eventStep = buildEventSteps()
+// eventLayer is a layer of the exponential's ziggurat: the width of a place, its
+// edge cut into 2^44, and the edge of its core, side by side in memory.
+type eventLayer struct{ step, core float64 }
 
-func buildEventSteps() *[256]float64 {
-	t := new([256]float64)
+var eventLayers = buildEventLayers()
+
+func buildEventLayers() *[256]eventLayer {
+	t := new([256]eventLayer)
 	for i := range t {
-		t[i] = exponentialTable.edge[i] * 0x1p-44
+		t[i] = eventLayer{exponentialTable.edge[i] * 0x1p-44, exponentialTable.edge[i+1]}
 	}
 	return t
 }
@@ -28,10 +30,10 @@ func buildEventSteps() *[256]float64 {
 // grid of 2^-44 of a layer's width.
 func Event(s *Stream, p float64) (wait float64, yes bool) {
 	w := s.pcg.Uint64()
-	i := w & 255
-	x := float64((float64(int64(w>>(8+choiceBits))) + 0.5) * eventStep[i])
-	if !(x < exponentialTable.edge[i+1]) {
-		x = exponentialOutside(s, i, x)
+	layer := &eventLayers[w&255]
+	x := float64((float64(int64(w>>(8+choiceBits))) + 0.5) * layer.step)
+	if !(x < layer.core) {
+		x = exponentialOutside(s, w&255, x)
 	}
 	steps := float64(p * choiceSteps)
 	whole := int64(steps)
