@@ -56,16 +56,13 @@ func TestBinomialHatAndSqueeze(t *testing.T) {
 }
 
 // TestBinomialBounds: at every distance from the mode, on both sides, the ratio of
-// probabilities lies within the bounds that settle most rejections. The source
-// gives them for distances above 20 alone.
+// probabilities lies within the bounds that settle most rejections.
 func TestBinomialBounds(t *testing.T) {
-	looked, narrowest := 0, 1.0
-	for _, n := range []float64{21, 25, 40, 64, 100, 200, 448, 700, 1000, 3000, 10000, 1e5, 1e7} {
-		for i := range 40 {
-			p := 10/n + (0.5-10/n)*float64(i)/39
-			if p > 0.5 {
-				continue
-			}
+	looked, narrowest, most := 0, 1.0, 0.0
+	for _, n := range []float64{448, 460, 500, 555, 700, 800, 1000, 1500, 3000, 10000, 1e5, 1e6} {
+		for i := range 60 {
+			least := math.Sqrt(binomialMeetTo / n) // below it hits are scattered
+			p := least + (0.5-least)*float64(i)/59
 			l := binomialLaw(int64(n), p)
 			mode := math.Floor((n + 1) * p)
 			peak, variance := l.at(int64(mode)), n*p*(1-p)
@@ -75,13 +72,16 @@ func TestBinomialBounds(t *testing.T) {
 					if k < 0 || k > n {
 						continue
 					}
-					middle, margin := binomialBounds(k-mode, variance)
+					middle, margin := binomialBounds(k, mode, n, p)
 					if margin >= 1 {
 						continue
 					}
 					looked++
 					r := l.at(int64(k)) / peak
 					narrowest = math.Min(narrowest, margin)
+					if n <= 10000 { // beyond, the logarithm has too few digits
+						most = math.Max(most, math.Abs(math.Log(r/middle))/margin)
+					}
 					if r < middle*(1-margin) || r*(1-margin) > middle {
 						t.Fatalf("n = %v, p = %v: at %v from the mode the ratio is %v, outside of %v and %v", n, p, k-mode, r, middle*(1-margin), middle/(1-margin))
 					}
@@ -89,8 +89,8 @@ func TestBinomialBounds(t *testing.T) {
 			}
 		}
 	}
-	if looked < 100000 || narrowest > 1e-6 {
-		t.Errorf("only %d ratios were looked at, with margins from %v", looked, narrowest)
+	if looked < 100000 || narrowest > 1e-5 || most > 0.9 || most < 0.5 {
+		t.Errorf("%d ratios were looked at, with margins from %v; they come to %v of it", looked, narrowest, most)
 	}
 }
 
