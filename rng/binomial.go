@@ -209,7 +209,7 @@ func binomialReject(s *Stream, n int64, p float64) int64 {
 //
 // and up to 3.2 standard deviations out, at the n and p that come here, the ratio
 // differs from that by less than (0.1 + 0.3 z^2 + 0.1 z^4)/v, z = d/sqrt(v), and
-// by 0.9 of it at most where its test has looked. Further out there is no bound.
+// by 0.75 of it at most where its test has looked. Further out there is no bound.
 func binomialBounds(k, m, n, p float64) (middle, margin float64) {
 	np := float64(n * p)
 	v := float64(np * (1 - p))
