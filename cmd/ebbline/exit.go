@@ -20,7 +20,7 @@ const (
 )
 
 const statusHelp = `Exit status: 0 done; 1 the run failed (disk full, interrupted); 2 bad input or
-usage, nothing written; 3 done and above the limit, with --fail-above-limit;
+usage, nothing written; 3 done and above the limit (assess --fail-above-limit);
 4 rerun disagrees.`
 
 // badInput is an error of the person's input: exit status 2.

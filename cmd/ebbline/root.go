@@ -3,6 +3,8 @@ package main
 import (
 	"io"
 
+	"ebbline/pva"
+
 	"github.com/spf13/cobra"
 )
 
@@ -33,7 +35,12 @@ law, agency guidance and a qualified biologist's judgement come first.
 		SilenceErrors: true,
 		SilenceUsage:  true,
 	}
-	root.CompletionOptions.HiddenDefaultCmd = false
-	root.AddCommand(newAssess(a), newExact(a), newCheck(a), newNew(a), newExample(a), newFit(a), newSweep(a), newMinimum(a), newMerge(a), newRerun(a), newVersion(a))
+	root.Flags().Bool("version", false, "print the version")
+	root.Version = pva.Version // without it the flag does nothing
+	root.SetVersionTemplate(versionLine())
+	root.SetUsageFunc(usage)
+	root.SetHelpCommand(newHelp())
+	root.AddCommand(newAssess(a), newExact(a), newCheck(a), newNew(a), newExample(a), newFit(a), newSweep(a), newMinimum(a), newMerge(a), newRerun(a), newCompletion(a), newMan(a), newVersion(a))
+	addCompletions(root)
 	return root
 }
