@@ -144,13 +144,14 @@ func binomialInverse(s *Stream, n int64, p float64) int64 {
 	}
 	u = s.fine(w)
 	l := float64(nf * portable.Log1p(-p))
-	return walkUp(u, -portable.Expm1(l), portable.Exp(l), nf+1, p/(1-p))
+	return min(n, walkUp(u, -portable.Expm1(l), portable.Exp(l), nf+1, p/(1-p)))
 }
 
 // walkUp returns the smallest k with P(more than k) <= u, given more = P(more
 // than 0), at = P(0), and P(k) = P(k-1) (top-k)/k ratio; top = +Inf stands for
 // P(k) = P(k-1) ratio/k. No law that comes here has its mean above 10, so that
-// 150 lies far beyond the last place of `more`.
+// 150 lies far beyond the last place of u; where rounding leaves more above 0 for
+// ever, it ends there.
 func walkUp(u, more, at, top, ratio float64) int64 {
 	k := 0.0
 	for u < more && k < 150 {
@@ -209,7 +210,7 @@ func binomialReject(s *Stream, n int64, p float64) int64 {
 //
 // and up to 3.2 standard deviations out, at the n and p that come here, the ratio
 // differs from that by less than (0.1 + 0.3 z^2 + 0.1 z^4)/v, z = d/sqrt(v), and
-// by 0.75 of it at most where its test has looked. Further out there is no bound.
+// by 0.76 of it at most where its test has looked. Further out there is no bound.
 func binomialBounds(k, m, n, p float64) (middle, margin float64) {
 	np := float64(n * p)
 	v := float64(np * (1 - p))

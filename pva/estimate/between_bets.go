@@ -50,7 +50,8 @@ func together(values []float64) []weighted {
 // with any number of draws, and misses it to either side in at most half of the
 // rest. Draws of a Latin hypercube are negatively associated (K. Joag-Dev & F.
 // Proschan 1983, Ann. Statist. 11:286-295), so that it is as safe for them where
-// the risk goes one way with each input. Values that are shares of replicates
+// the risk goes one way with each input; of draws with rank correlations that is
+// not proven. Values that are shares of replicates
 // have the mean of the risks behind them, so that it holds for them too.
 //
 // The price: with n draws of next to no risk the upper end is at about 4.4/n for

@@ -48,7 +48,8 @@ type Result struct {
 	Diagnostics *Diagnostics
 	Doubts      []pva.Warning
 
-	p *prepared
+	p        *prepared
+	unparted bool // the split is not followed: it would leave a case no weather
 }
 
 // Fit fits a series. It is an error if the counts have no answer at all: too

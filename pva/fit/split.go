@@ -26,6 +26,9 @@ type Split struct {
 	Last State
 }
 
+// noGain is a difference of log likelihoods that is rounding alone.
+const noGain = 1e-11
+
 // fitSplit fits by maximum likelihood or by its restricted form.
 func fitSplit(p *prepared, restricted bool, confidence float64) *Split {
 	s := &splitter{p: p, restricted: restricted}
@@ -39,6 +42,9 @@ func fitSplit(p *prepared, restricted bool, confidence float64) *Split {
 		s.scale = s.spread()
 		best, fx, _ := lowest(func(x float64) float64 { return -s.at(x*s.scale, 0) }, unitGrid(4))
 		s.best = -fx
+		if s.at(0, 0) >= s.best-noGain {
+			best = 0
+		}
 		out.Process = Estimate{best * s.scale, 0, 0, nan}
 		out.Process.Low, out.Process.High = s.ends(out.Process.Value, func(v float64) float64 { return s.at(v, 0) })
 		out.Observation = Estimate{nan, nan, nan, nan}
@@ -50,9 +56,11 @@ func fitSplit(p *prepared, restricted bool, confidence float64) *Split {
 	// searched, and the scale follows in closed form.
 	share, fx, _ := lowest(func(x float64) float64 { v, _ := s.ratio(x); return -v }, unitGrid(1))
 	s.best = -fx
-	// A share that gains nothing over none is none: the edge of the range.
-	if none, _ := s.ratio(0); none >= s.best-1e-11 {
+	// A share that gains nothing over an edge of the range is that edge.
+	if none, _ := s.ratio(0); none >= s.best-noGain {
 		share = 0
+	} else if all, _ := s.ratio(1); all >= s.best-noGain {
+		share = 1
 	}
 	_, c := s.ratio(share)
 	out.Process.Value, out.Observation.Value = (1-share)*c, share*c

@@ -1,6 +1,11 @@
 package fit
 
-import "math"
+import (
+	"fmt"
+	"math"
+
+	"ebbline/pva"
+)
 
 // State is what the counts say of the abundance itself at the last count, its
 // error of counting filtered out: the logarithm of the abundance is normal.
@@ -30,7 +35,21 @@ func (r *Result) State() *State {
 // 76:323-341), and a case without weather would be surer than the counts are.
 func (r *Result) separated() bool {
 	s := r.Split
-	return s.Stated || s.Observation.Value > 0 && s.Process.Value > 0
+	return !r.unparted && (s.Stated || s.Observation.Value > 0 && s.Process.Value > 0)
+}
+
+// together makes the case with the error of counting left in the variance. A
+// fitted split whose process variance is below what single births and deaths
+// make would leave no weather at all, as one of none would.
+func (r *Result) together(o CaseOptions) (*Written, error) {
+	whole := *r
+	whole.unparted = true
+	w, err := whole.Case(o)
+	if err != nil {
+		return nil, err
+	}
+	w.Doubts = append(w.Doubts, pva.Warning{Text: fmt.Sprintf("the fitted split leaves a process variance of %.2g, below what single births and deaths make, and is not followed: the error of counting stays in the variance that makes the weather; state the counts' own errors (column se or cv) if they are known", r.Split.Process.Value)})
+	return w, nil
 }
 
 // mostCV is the widest start of a case.

@@ -70,6 +70,9 @@ func (r *Result) Case(o CaseOptions) (*Written, error) {
 	if err != nil {
 		return nil, err
 	}
+	if r.separated() && !r.Split.Stated && !m.crowded && m.weather == 0 {
+		return r.together(o)
+	}
 	w := &Written{Model: model.Name, Survival: t.survival, Growth: math.NaN(), Variance: t.variance, Demographic: m.demography, Weather: m.weather, Off: m.off, Start: start, StartCV: cv}
 	if !m.crowded {
 		w.Growth = t.curve(1)
@@ -179,7 +182,7 @@ func (r *Result) variance(model *Model) Estimate {
 func (r *Result) survival(o CaseOptions, t target) (float64, error) {
 	s := o.Survival
 	if s == 0 {
-		g := r.Drift.Mu.Value
+		g := r.growth().Value
 		if t.crowded {
 			g = 0 // around the capacity, in the mean
 		}

@@ -125,6 +125,9 @@ func (r *Runner) Smallest(ctx context.Context, q *Sizes, opt SearchOptions) (*Cr
 	switch {
 	case !out.Found && biggest.Unreachable != "":
 		out.Reason = "none up to " + x(q.To) + ", where " + biggest.Unreachable
+		if at := out.At(); at.Verdict == pva.Within {
+			out.Reason += "; the largest size looked at that it can have, " + x(at.Value) + ", is within the limit: look at smaller ones (minimum.to)"
+		}
 	case !out.Found && biggest.Verdict == pva.AboveLimit:
 		out.Reason = "none up to " + x(q.To)
 	case !out.Found:

@@ -103,3 +103,56 @@ func TestUnreachableSizesAreNotViable(t *testing.T) {
 		t.Errorf("found %+v", got)
 	}
 }
+
+// cycling is an invented population that overshoots its capacity and cycles.
+func cycling(t testing.TB, more ...any) *pva.Case {
+	return caseOf(t, append([]any{"question.threshold", 5, "question.horizon", 10, "question.limit", .05, "start.abundance", 60, "births.breeding", "pulse", "births.parents", "all",
+		"births.rate", 10, "births.year_sd", .5, "births.crowding.form", "ricker", "births.scarcity.form", "saturating", "births.scarcity.half_at", 50, "deaths.fraction", 1,
+		"minimum.vary", "capacity", "minimum.from", 20, "minimum.to", 2000, "run.replicates", 500, "run.seed", 2}, more...)...)
+}
+
+// TestCyclingSizes: a population that swings around its capacity has one, by
+// whichever key it is stated: with a scale that makes the same capacity the
+// answers agree.
+func TestCyclingSizes(t *testing.T) {
+	byScale := cycling(t, "births.crowding.scale", 60)
+	s, q, err := NewMinimum(byScale)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if m, why, err := q.model(byScale, s.base, 1000); err != nil || why != "" || math.Abs(bare(m).MeanYear(1000)-1000) > 1e-6 {
+		t.Fatal(why, err)
+	}
+	byCapacity := cycling(t, "births.crowding.capacity", q.Capacity)
+	a, b := solve(t, byScale, true, SearchOptions{NoExact: true}), solve(t, byCapacity, true, SearchOptions{NoExact: true})
+	if !a.Found || !b.Found || a.Value != b.Value || a.Value <= 20 || a.Value > 500 {
+		t.Errorf("%v %s, %v %s", a.Value, a.Reason, b.Value, b.Reason)
+	}
+}
+
+// TestSteepRise: where the risk is nearly level and then a cliff, a straight line
+// between two values creeps; the search ends, with whole numbers next to it.
+func TestSteepRise(t *testing.T) {
+	c := caseOf(t, "question.threshold", 5, "question.horizon", 20, "question.limit", .05, "start.abundance", 400000, "births.breeding", "pulse", "births.rate", .42857, "deaths.fraction", .3,
+		"catastrophe.1.chance", .0024, "catastrophe.1.kills", .999999, "harvest.1.rule", "constant", "harvest.1.when", "end", "harvest.1.take", 0,
+		"sweep.1.key", "harvest.1.take", "sweep.1.from", 0, "sweep.1.to", 40000, "sweep.1.step", 2000, "run.replicates", 1000)
+	for seed := range 6 {
+		c, faults := c.With([]pva.Setting{{Path: "run.seed", Value: pva.Num(float64(seed + 1))}})
+		if len(faults) > 0 {
+			t.Fatal(faults)
+		}
+		got := solve(t, c, false, SearchOptions{NoExact: true})
+		if !got.Found {
+			continue
+		}
+		next := math.Inf(1) // the next value looked at
+		for _, p := range got.Points {
+			if p.Value > got.Value {
+				next = math.Min(next, p.Value)
+			}
+		}
+		if got.At() == nil || got.At().Value != got.Value || next != got.Value+1 && got.Value != got.To {
+			t.Errorf("seed %d: %v, the next looked at %v", seed+1, got.Value, next)
+		}
+	}
+}

@@ -283,7 +283,7 @@ func (c *curve) answer(ctx context.Context, level int64) (*Crossing, error) {
 	a := c.a
 	out := &Crossing{Key: a.key, Path: a.path, Unit: a.unit, Whole: a.whole, Rising: a.rising, From: a.from, To: a.to, Limit: a.limit, Confidence: a.confidence,
 		Horizon: a.horizon, Safe: math.NaN(), Other: math.NaN(), Value: math.NaN()}
-	x, found := c.estimated()
+	x, found := c.estimated(false)
 	bounds := func() {
 		good, bad := c.bracket()
 		out.Safe, out.Other = math.NaN(), math.NaN()
@@ -299,7 +299,7 @@ func (c *curve) answer(ctx context.Context, level int64) (*Crossing, error) {
 		out.Decided = bad == good+1
 	}
 	bounds()
-	for tries := 0; found && c.at(x) == nil && tries < 40; tries++ {
+	for tries := 0; found && c.at(x) == nil; tries++ {
 		if err := c.look(ctx, []float64{x}, level); err != nil {
 			return nil, err
 		}
@@ -308,7 +308,9 @@ func (c *curve) answer(ctx context.Context, level int64) (*Crossing, error) {
 		if !a.whole {
 			break
 		}
-		x, found = c.estimated()
+		// Where the risk rises steeply a straight line creeps: then the gap is
+		// halved, which ends.
+		x, found = c.estimated(tries >= 3)
 		bounds()
 	}
 	out.Found = found
@@ -325,9 +327,18 @@ func (c *curve) answer(ctx context.Context, level int64) (*Crossing, error) {
 	return out, nil
 }
 
+// safer is the whole number next to x, or x itself, on the safe side.
+func (c *curve) safer(x float64) float64 {
+	if c.a.rising {
+		return math.Floor(x)
+	}
+	return math.Ceil(x)
+}
+
 // estimated is the last value, from the safe side, before the risk is first
-// estimated above the limit: between two points by a straight line.
-func (c *curve) estimated() (x float64, found bool) {
+// estimated above the limit: between two points by a straight line, or half-way
+// where that is asked for or one of them has no risk.
+func (c *curve) estimated(halve bool) (x float64, found bool) {
 	for i, p := range c.points {
 		if p.Risk.Estimate <= c.a.limit {
 			continue
@@ -337,12 +348,13 @@ func (c *curve) estimated() (x float64, found bool) {
 		}
 		q := c.points[i-1]
 		share := (c.a.limit - q.Risk.Estimate) / (p.Risk.Estimate - q.Risk.Estimate)
+		if halve || p.Unreachable != "" {
+			share = 0.5
+		}
 		x = q.Value + float64((p.Value-q.Value)*share)
-		if c.a.whole { // towards the safe side
-			if c.a.rising {
-				x = math.Floor(x)
-			} else {
-				x = math.Ceil(x)
+		if c.a.whole {
+			if x = c.safer(x); x == q.Value { // whole numbers between may be within the limit too
+				x = c.safer((q.Value + p.Value) / 2)
 			}
 		}
 		return x, true
@@ -355,9 +367,12 @@ func (c *curve) estimated() (x float64, found bool) {
 func (c *curve) breaks() []Break {
 	level := 1 - (1-c.a.confidence)/float64(max(1, len(c.points)-1))
 	var out []Break
-	riskiest := c.points[0]
-	for _, p := range c.points[1:] {
-		if p.Risk.Estimate >= riskiest.Risk.Estimate {
+	var riskiest *Point
+	for _, p := range c.points {
+		if p.Unreachable != "" {
+			continue // no risk to hold against others
+		}
+		if riskiest == nil || p.Risk.Estimate >= riskiest.Risk.Estimate {
 			riskiest = p
 			continue
 		}

@@ -142,12 +142,15 @@ func (q *Sizes) settings(c *pva.Case, size, times, scales float64) []pva.Setting
 	return out
 }
 
-// resting is where the mean path rests without takes, stocking and ceiling: the
-// largest resting place that it returns to; 0 if there is none.
+// resting is where births balance deaths without takes, stocking and ceiling: the
+// largest population that the mean year brings back towards, from below at least.
+// One that overshoots and cycles around it rests there too. 0 if there is none.
 func resting(m *rates.Model) float64 {
+	const aside = 1e-4
+	m = bare(m)
 	k := 0.0
-	for _, e := range bare(m).Equilibria() {
-		if e.Stable {
+	for _, e := range m.Equilibria() {
+		if below := e.N * (1 - aside); m.MeanYear(below) > below {
 			k = math.Max(k, e.N)
 		}
 	}

@@ -146,6 +146,10 @@ func (f *flow) lane(b *block, i, y int, t float64, events int, streams []rate, a
 	b.most = b.n[i]
 	for k := 0; t < 1; {
 		n := b.n[i]
+		if n > b.program.stopAbove { // it comes so from a stocking or from events of all lanes
+			b.outgrow(i)
+			return
+		}
 		b.most = max(b.most, n)
 		until := 1.0
 		single := n <= f.eventsBelow
