@@ -27,7 +27,7 @@ func (c *Case) With(settings []Setting) (*Case, Faults) {
 		out, faults := build(entries)
 		drop := map[string]bool{}
 		for _, f := range faults {
-			if _, fresh := ch.at[f.Path]; f.unused && !fresh && !ch.replaced[f.Path] {
+			if _, fresh := ch.at[f.Path]; f.unused && !fresh && !ch.replaced[f.Path] && len(ch.inList[f.Path]) == 0 {
 				drop[f.Path] = true
 			}
 		}

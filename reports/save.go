@@ -3,11 +3,13 @@ package reports
 import (
 	"errors"
 	"fmt"
+	"io"
 	"io/fs"
 	"os"
 	"path/filepath"
 	"runtime"
 	"strconv"
+	"strings"
 	"syscall"
 )
 
@@ -18,10 +20,13 @@ type file interface {
 	Close() error
 }
 
-// create opens a file that must not exist yet.
-var create = func(name string) (file, error) {
-	return os.OpenFile(name, os.O_WRONLY|os.O_CREATE|os.O_EXCL, 0o666)
-}
+// The steps that tests make fail. create opens a file that must not exist yet.
+var (
+	create = func(name string) (file, error) {
+		return os.OpenFile(name, os.O_WRONLY|os.O_CREATE|os.O_EXCL, 0o666)
+	}
+	rename = os.Rename
+)
 
 // Save writes a whole file or leaves the old one as it was: the data goes to a
 // temporary file in the same folder, reaches the disk, and takes the file's name
@@ -40,25 +45,43 @@ func Save(path string, data []byte) error {
 	case !errors.Is(err, fs.ErrNotExist):
 		return err
 	}
-	temporary, f, err := beside(path)
+	err := replace(path, data, mode)
+	if errors.Is(err, errGone) {
+		// Another run took the temporary file for what a killed one had left
+		// (clearLeftovers), as when a clock jumped: once more.
+		err = replace(path, data, mode)
+	}
 	if err != nil {
-		return fmt.Errorf("%s: cannot be written: %w", path, err)
-	}
-	if err := fill(f, data); err != nil {
-		os.Remove(temporary)
-		return notWritten(path, mode != 0, err)
-	}
-	if mode != 0 {
-		if err := os.Chmod(temporary, mode); err != nil {
-			os.Remove(temporary)
-			return notWritten(path, mode != 0, err)
-		}
-	}
-	if err := os.Rename(temporary, path); err != nil {
-		os.Remove(temporary)
 		return notWritten(path, mode != 0, err)
 	}
 	return syncFolder(filepath.Dir(path))
+}
+
+// errGone is wrapped by the error of a temporary file that somebody took away.
+var errGone = errors.New("the temporary file is gone")
+
+// replace fills a temporary file and gives it the name of path. A mode of 0 is
+// that of a new file.
+func replace(path string, data []byte, mode fs.FileMode) error {
+	temporary, f, err := beside(path)
+	if err != nil {
+		return err
+	}
+	err = fill(f, data)
+	if err == nil && mode != 0 {
+		err = os.Chmod(temporary, mode)
+	}
+	if err == nil {
+		err = rename(temporary, path)
+	}
+	if err == nil {
+		return nil
+	}
+	if _, there := os.Lstat(temporary); errors.Is(there, fs.ErrNotExist) && errors.Is(err, fs.ErrNotExist) {
+		return fmt.Errorf("%w: %w", errGone, err)
+	}
+	os.Remove(temporary)
+	return err
 }
 
 // notWritten is the error of a save that failed: the cause alone, without the
@@ -93,14 +116,23 @@ func beside(path string) (string, file, error) {
 	}
 }
 
+// longestBase keeps a temporary name within what file systems take: 255 bytes.
+const longestBase = 200
+
 // temporaryName is the name of the n-th temporary file of path.
 func temporaryName(path, n string) string {
 	folder, base := filepath.Split(path)
+	if len(base) > longestBase {
+		base = strings.ToValidUTF8(base[:longestBase], "")
+	}
 	return folder + "." + base + ".part" + n
 }
 
 func fill(f file, data []byte) error {
-	_, err := f.Write(data)
+	n, err := f.Write(data)
+	if err == nil && n < len(data) {
+		err = io.ErrShortWrite
+	}
 	if err == nil {
 		err = f.Sync()
 	}

@@ -6,6 +6,9 @@ import (
 	"io/fs"
 	"os"
 	"path/filepath"
+	"strconv"
+	"strings"
+	"syscall"
 	"time"
 )
 
@@ -18,6 +21,8 @@ func CheckTarget(path, title string, force bool) error {
 	ours, same, err := Owned(path, title)
 	switch {
 	case errors.Is(err, fs.ErrNotExist):
+	case errors.Is(err, syscall.ENAMETOOLONG):
+		return fmt.Errorf("%s cannot be the name of a file (%v); give a shorter one", path, reason(err))
 	case err != nil && !force:
 		return fmt.Errorf("%s cannot be read to see whose it is (%v); use --force to replace it, or --out for another name", path, err)
 	case !force && !ours:
@@ -30,10 +35,23 @@ func CheckTarget(path, title string, force bool) error {
 }
 
 // clearLeftovers removes temporary files of path that no run can still be
-// writing. What cannot be removed is left: it does no harm.
+// writing. What cannot be removed is left: it does no harm. Where a clock has
+// jumped, a file that is being written may go too: Save then writes it again.
 func clearLeftovers(path string) {
-	parts, _ := filepath.Glob(temporaryName(path, "*"))
-	for _, part := range parts {
+	dir, start := filepath.Split(temporaryName(path, ""))
+	if dir == "" {
+		dir = "."
+	}
+	entries, err := os.ReadDir(dir)
+	if err != nil {
+		return
+	}
+	for _, e := range entries {
+		n, ours := strings.CutPrefix(e.Name(), start)
+		if _, err := strconv.Atoi(n); !ours || err != nil {
+			continue
+		}
+		part := filepath.Join(dir, e.Name())
 		if info, err := os.Lstat(part); err == nil && info.Mode().IsRegular() && time.Since(info.ModTime()) > time.Hour {
 			os.Remove(part)
 		}

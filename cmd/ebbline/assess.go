@@ -92,6 +92,9 @@ func (a *app) assess(o *assessOptions, args []string) error {
 	about.Command += exactFlag(wish) + untilFlag(o.untilDecided)
 	report := reports.Build(result, about)
 	if err := o.write(a, report, result, book); err != nil {
+		if !o.quiet { // what hours may have gone into is not lost with the file
+			a.say(o.json == "-", text.Answer(report, result, isTerminal(a.out)))
+		}
 		return err
 	}
 	if !o.quiet {

@@ -91,7 +91,7 @@ func (a *app) minimum(o *minimumOptions, args []string) error {
 	}
 	report := reports.BuildMinimum(study, sizes, found, meta(c, name, "minimum", o.example))
 	if err := o.writeFiles(a, report, book, doc, tables); err != nil {
-		return err
+		return stoppedSearch(ctx, err, opt.Ledger)
 	}
 	if !o.quiet {
 		a.say(o.json == "-", text.Minimum(study, sizes, found, name)+"Report: "+book+"\n")

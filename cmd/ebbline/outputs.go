@@ -6,6 +6,7 @@ import (
 	"io/fs"
 	"os"
 	"path/filepath"
+	"syscall"
 
 	"ebbline/pva"
 	"ebbline/reports"
@@ -60,6 +61,9 @@ func (o *outputs) fresh(path, caseName string) error {
 
 // takesFiles makes sure that a file can be made at path, in the folder given.
 func takesFiles(path, dir string) error {
+	if _, err := os.Lstat(path); errors.Is(err, syscall.ENAMETOOLONG) {
+		return badInputf("%s cannot be the name of a file (%v); give a shorter one", path, syscall.ENAMETOOLONG)
+	}
 	switch info, err := os.Stat(dir); {
 	case errors.Is(err, fs.ErrNotExist):
 		return badInputf("%s: the folder %s does not exist", path, dir)

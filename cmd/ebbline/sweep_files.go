@@ -2,9 +2,12 @@ package main
 
 import (
 	"encoding/csv"
+	"errors"
 	"fmt"
+	"maps"
 	"os"
 	"path/filepath"
+	"slices"
 	"strings"
 
 	"ebbline/pva"
@@ -99,64 +102,109 @@ func notForeign(dir string) error {
 	return badInputf("the folder %s holds other files and no ledger; name another with --ledger", dir)
 }
 
-// writeFiles writes the workbook, then JSON and CSV, each whole or not at all.
+// writeFiles writes the workbook, the figures, JSON and CSV, each file whole or
+// not at all. One that cannot be written keeps none of the others back: the error
+// names all that failed, and what is written all the same.
 func (o *outputs) writeFiles(a *app, r *reports.Report, book string, doc []byte, tables map[string][]byte) error {
+	var kept, failed []string
+	var causes []error
+	did := func(what string, err error) {
+		if err == nil {
+			kept = append(kept, what)
+			return
+		}
+		failed, causes = append(failed, err.Error()), append(causes, err)
+	}
 	data, err := workbook.Bytes(r)
-	if err != nil {
-		return err
+	if err == nil {
+		err = reports.Save(book, data)
 	}
-	if err := reports.Save(book, data); err != nil {
-		return err
-	}
-	if err := o.writeFigures(r); err != nil {
-		return err
+	did(book, err)
+	if o.figures != "" {
+		did("the figures in "+o.figures, o.writeFigures(r))
 	}
 	switch o.json {
 	case "":
 	case "-":
-		if _, err := a.out.Write(doc); err != nil {
-			return err
-		}
+		_, err := a.out.Write(doc)
+		did("the JSON", err)
 	default:
-		if err := reports.Save(o.json, doc); err != nil {
-			return err
-		}
+		did(o.json, reports.Save(o.json, doc))
 	}
-	for name, content := range tables {
-		if err := os.MkdirAll(o.csv, 0o777); err != nil {
-			return plainPathError(err)
+	for _, name := range slices.Sorted(maps.Keys(tables)) {
+		path := filepath.Join(o.csv, name)
+		err := plainPathError(os.MkdirAll(o.csv, 0o777))
+		if err == nil {
+			err = reports.Save(path, tables[name])
 		}
-		if err := reports.Save(filepath.Join(o.csv, name), content); err != nil {
-			return err
-		}
+		did(path, err)
 	}
-	return nil
+	if len(failed) == 0 {
+		return nil
+	}
+	said := strings.Join(failed, "; ")
+	if len(kept) > 0 {
+		said += "; written all the same: " + strings.Join(kept, ", ")
+	}
+	return notAllWritten{said, causes}
 }
 
+// notAllWritten is the error of files that could not be written.
+type notAllWritten struct {
+	said   string
+	causes []error
+}
+
+func (n notAllWritten) Error() string   { return n.said }
+func (n notAllWritten) Unwrap() []error { return n.causes }
+
 // liveCSV writes the cells of a sweep as they come, so that a long run can be
-// looked at; the whole table takes its place at the end.
+// looked at: to a file of its own, which says in its name that it is not the
+// whole table and goes when the run ends. A table of an earlier run is left as it
+// is until the whole of the new one takes its place.
 type liveCSV struct {
 	study *sweep.Study
 	early []*sweep.Outcome // that came before the file was open
-	f     *os.File
+	f     liveFile
+	name  string
 	w     *csv.Writer
 	err   error
 }
 
-const liveName = "sweep.csv"
+// liveFile is what liveCSV needs of an open file; tests put one in its place that
+// fails.
+type liveFile interface {
+	Write(p []byte) (int, error)
+	Close() error
+}
+
+// The shards of a sweep may share a folder: each process has a file of its own.
+const livePrefix, liveSuffix = "sweep-so-far-", ".csv"
+
+var createLive = func(dir string) (liveFile, string, error) {
+	f, err := os.CreateTemp(dir, livePrefix+"*"+liveSuffix)
+	if err != nil {
+		return nil, "", err
+	}
+	f.Chmod(0o644) // others may look at it
+	return f, f.Name(), nil
+}
 
 func (l *liveCSV) open(dir string) error {
 	if err := os.MkdirAll(dir, 0o777); err != nil {
 		return plainPathError(err)
 	}
-	f, err := os.Create(filepath.Join(dir, liveName))
+	f, name, err := createLive(dir)
 	if err != nil {
 		return plainPathError(err)
 	}
-	l.f, l.w = f, csv.NewWriter(f)
+	l.f, l.name, l.w = f, name, csv.NewWriter(f)
 	l.err = l.w.Write(tidy.SweepHead(l.study))
 	l.add(l.early)
-	return l.err
+	if l.err != nil {
+		return l.close()
+	}
+	return nil
 }
 
 // add is called by one goroutine at a time.
@@ -180,16 +228,32 @@ func (l *liveCSV) close() error {
 	if l.f == nil {
 		return nil
 	}
-	name := l.f.Name()
 	if err := l.f.Close(); l.err == nil {
 		l.err = err
 	}
 	l.f = nil
+	os.Remove(l.name)
 	if l.err != nil {
-		return fmt.Errorf("%s cannot be written: %w; the ledger keeps what is finished: make room and run again with --resume", name, l.err)
+		return fmt.Errorf("%s cannot be written: %w; the ledger keeps what is finished: make room and run again with --resume", l.name, cause(l.err))
 	}
 	return nil
 }
 
-// remove takes the file away if it stands in the ledger's folder.
-func (l *liveCSV) remove(dir string) { os.Remove(filepath.Join(dir, liveName)) }
+// cause is the cause of a path error without the path.
+func cause(err error) error {
+	var p *os.PathError
+	if errors.As(err, &p) {
+		return p.Err
+	}
+	return err
+}
+
+// remove takes away what killed runs left in the ledger's folder.
+func (l *liveCSV) remove(dir string) {
+	entries, _ := os.ReadDir(dir)
+	for _, e := range entries {
+		if name := e.Name(); strings.HasPrefix(name, livePrefix) && strings.HasSuffix(name, liveSuffix) {
+			os.Remove(filepath.Join(dir, name))
+		}
+	}
+}

@@ -20,10 +20,15 @@ func isTerminal(w io.Writer) bool {
 	return ok && term.IsTerminal(int(f.Fd()))
 }
 
-// interruptible is a context that ends at the first Ctrl-C or TERM, so that
-// what is complete is kept; the second one ends the program at once.
+// interruptible is a context that ends at the first Ctrl-C, TERM or closing of
+// the terminal, so that what is complete is kept; the second one ends the program
+// at once. A run under nohup goes on when the terminal closes.
 func (a *app) interruptible() (context.Context, func()) {
-	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
+	ends := []os.Signal{os.Interrupt, syscall.SIGTERM}
+	if !signal.Ignored(syscall.SIGHUP) {
+		ends = append(ends, syscall.SIGHUP)
+	}
+	ctx, stop := signal.NotifyContext(context.Background(), ends...)
 	ended := make(chan struct{})
 	go func() {
 		select {

@@ -4,6 +4,7 @@ import (
 	"errors"
 	"fmt"
 	"strings"
+	"unicode/utf8"
 
 	"ebbline/pva"
 
@@ -33,6 +34,8 @@ func ParseSetting(text string) ([]pva.Setting, error) {
 		return refuse("has no key; write key=value, such as harvest.1.take=4")
 	case len(text) > longestSetting:
 		return refuse("is too long")
+	case !utf8.ValidString(text):
+		return refuse("is not UTF-8 text")
 	}
 	n := nodeAt(key)
 	if n == nil || n == schema {
@@ -49,6 +52,9 @@ func ParseSetting(text string) ([]pva.Setting, error) {
 	entries, err := parseValue(n, key, value)
 	if err != nil {
 		return refuse("%s", err)
+	}
+	if len(entries) == 0 {
+		return refuse("sets nothing; give %s", shapeAsks(n, key))
 	}
 	settings := make([]pva.Setting, len(entries))
 	for i, e := range entries {

@@ -19,8 +19,9 @@ const (
 	largestFile = 1 << 20 // bytes
 	mostCounts  = 1000
 	mostFaults  = 50
-	largest     = 1e12 // no population beyond this, as in a case
-	latest      = 1e6  // no date beyond this
+	largest     = 1e12  // no population beyond this, as in a case
+	latest      = 1e6   // no date beyond this
+	tiniest     = 1e-30 // no number but 0 nearer to 0, as in a case
 )
 
 // Fault is one thing wrong with a file of counts, with its place.

@@ -171,6 +171,8 @@ func (r *reading) row(s *Series, row []Cell, place func(int) spot) {
 			r.fail(at, name, c.Text, "is not a number", "give "+want)
 		case !(v >= low && v <= high):
 			r.fail(at, name, c.Text, fmt.Sprintf("is not between %g and %g", low, high), "give "+want)
+		case v != 0 && math.Abs(v) < tiniest:
+			r.fail(at, name, c.Text, fmt.Sprintf("is nearer to 0 than %g", tiniest), "give "+want)
 		}
 		return v
 	}

@@ -274,11 +274,11 @@ func TestCaseEntries(t *testing.T) {
 // a flow year, over the rate exp(-(d + r) a).
 func TestGenerationTime(t *testing.T) {
 	r := invented(t, 0)
-	lambda := math.Exp(r.Drift.Mu.Value)
 	w, err := r.Case(CaseOptions{Breeding: "pulse", Generation: 4, Split: 0.5, Model: Exponential})
 	if err != nil {
 		t.Fatal(err)
 	}
+	lambda := math.Exp(w.Growth) // the growth that the case is written for
 	num, den := 0.0, 0.0
 	for k := 1; k < 2000; k++ {
 		share := math.Pow(w.Survival/lambda, float64(k))
@@ -290,7 +290,7 @@ func TestGenerationTime(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	agreeTo(t, "mean age in a flow year", 1/(-math.Log(w.Survival)+r.Drift.Mu.Value), 4, 1e-9)
+	agreeTo(t, "mean age in a flow year", 1/(-math.Log(w.Survival)+w.Growth), 4, 1e-9)
 }
 
 // TestCaseRefusals: what counts cannot tell is asked for, and what cannot be is

@@ -13,7 +13,7 @@ func calendar(c *pva.Case, k pva.Calendar) []float64 {
 	for i := range out {
 		y := i + 1
 		f := trend
-		trend *= 1 + k.Trend
+		trend = min(trend*(1+k.Trend), beyond)
 		step := 1.0
 		for _, s := range k.Steps { // in order of date: the last one begun is in force
 			if c.Label(y) >= s.From {

@@ -66,10 +66,14 @@ func (c Crowding) crowdedDeaths(n float64) float64 {
 	case Linear:
 		return 1 + n/c.L
 	case Theta:
-		return 1 + portable.Pow(n/c.L, c.Exponent)
+		return min(1+portable.Pow(n/c.L, c.Exponent), beyond)
 	}
 	return 1
 }
+
+// beyond is a factor on a rate beyond any that means something. What may pass all
+// bounds is cut to it, so that no rate is infinite, and none times 0 no number.
+const beyond = 1e100
 
 // scaleForBirths is the L at which the birth factor at n is f, or 0 if there is none.
 func (c Crowding) scaleForBirths(n, f float64) float64 {

@@ -12,6 +12,12 @@ import (
 // explode is found at once and not by patience.
 const maxEvents = 10_000_000
 
+// maxSubsteps is the same for the sub-steps that auto shortens where rates are
+// high; a case may ask for half as many itself.
+const maxSubsteps = 2_000_000
+
+const tooManySubsteps = "more than 2,000,000 sub-steps in one year: rates so high cannot be followed; check births and deaths and what multiplies them, and the take and the additions through the year;"
+
 // tooManyEvents is the fault of such a case, with its way out.
 func (f *flow) tooManyEvents(always bool) string {
 	const what = "more than 10,000,000 births, deaths, removals and additions in one year: "

@@ -144,6 +144,7 @@ func (f *flow) lane(b *block, i, y int, t float64, events int, streams []rate, a
 	s := &b.demography[i]
 	step := 1 / float64(f.substeps)
 	b.most = b.n[i]
+	steps := 0
 	for k := 0; t < 1; {
 		n := b.n[i]
 		if n > b.program.stopAbove { // it comes so from a stocking or from events of all lanes
@@ -186,6 +187,10 @@ func (f *flow) lane(b *block, i, y int, t float64, events int, streams []rate, a
 			if moved := streamed(streams, n); moved*dt > most {
 				dt = max(most/moved, 1e-7)
 			}
+		}
+		if steps++; steps > maxSubsteps {
+			b.fail(i, y, tooManySubsteps)
+			return
 		}
 		if len(streams) == 0 {
 			f.jump(b, i, s, dt)

@@ -95,6 +95,10 @@ func series(m *rates.Model) pass {
 	}
 }
 
+// mostBirths is a birth rate beyond all that mean something: a rate is cut to it,
+// so that many catastrophes that each raise births cannot make it infinite.
+const mostBirths = 1e150
+
 // strike lets one catastrophe strike: model section 5. Each animal is killed
 // on its own; several catastrophes of a year multiply their effect on births.
 func strike(m *rates.Model, k int) pass {
@@ -106,7 +110,7 @@ func strike(m *rates.Model, k int) pass {
 			if strikes[i] >= chance {
 				continue
 			}
-			b.birth[i] *= times
+			b.birth[i] = min(b.birth[i]*times, mostBirths)
 			b.n[i] = rng.Binomial(&b.demography[i], b.n[i], 1-kills.Draw(normals[i]))
 		}
 	}

@@ -15,11 +15,14 @@ import (
 	"encoding/binary"
 	"errors"
 	"fmt"
+	"io"
 	"io/fs"
 	"os"
 	"path/filepath"
+	"runtime"
 	"strconv"
 	"sync"
+	"syscall"
 	"time"
 )
 
@@ -45,9 +48,21 @@ type file interface {
 	Close() error
 }
 
-var createFile = func(name string) (file, error) {
-	return os.OpenFile(name, os.O_WRONLY|os.O_CREATE|os.O_EXCL, 0o666)
-}
+// The steps that tests make fail.
+var (
+	createFile = func(name string) (file, error) {
+		return os.OpenFile(name, os.O_WRONLY|os.O_CREATE|os.O_EXCL, 0o666)
+	}
+	createManifest = func(dir string) (file, string, error) {
+		f, err := os.CreateTemp(dir, temporaryPrefix+"*")
+		if err != nil {
+			return nil, "", err
+		}
+		f.Chmod(0o644) // others may merge what one has run
+		return f, f.Name(), nil
+	}
+	link, rename = os.Link, os.Rename
+)
 
 // Ledger is an open folder. Append may be called from many goroutines.
 type Ledger struct {
@@ -115,7 +130,11 @@ func (l *Ledger) Append(key string, data []byte) error {
 			return l.fail(err)
 		}
 	}
-	if _, err := l.f.Write(rec); err != nil {
+	n, err := l.f.Write(rec)
+	if err == nil && n < len(rec) {
+		err = io.ErrShortWrite
+	}
+	if err != nil {
 		return l.fail(err)
 	}
 	if time.Since(l.synced) >= syncEvery {
@@ -167,8 +186,25 @@ func (l *Ledger) begin() error {
 			return err
 		}
 		l.f, l.synced = f, time.Now()
+		return syncFolder(l.dir)
+	}
+}
+
+// syncFolder brings a new name to the disk, without which what is written to the
+// file may be there and not be found. Systems that cannot sync a folder say so.
+func syncFolder(dir string) error {
+	if runtime.GOOS == "windows" {
 		return nil
 	}
+	d, err := os.Open(dir)
+	if err != nil {
+		return err
+	}
+	defer d.Close()
+	if err := d.Sync(); err != nil && !errors.Is(err, syscall.EINVAL) && !errors.Is(err, errors.ErrUnsupported) {
+		return err
+	}
+	return nil
 }
 
 // Close brings what was written to the disk.
@@ -246,8 +282,12 @@ func safe(s string) string {
 // reason is the cause of a path error without the path.
 func reason(err error) error {
 	var p *fs.PathError
-	if errors.As(err, &p) {
+	var l *os.LinkError
+	switch {
+	case errors.As(err, &p):
 		return p.Err
+	case errors.As(err, &l):
+		return l.Err
 	}
 	return err
 }

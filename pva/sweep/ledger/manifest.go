@@ -6,6 +6,7 @@ import (
 	"encoding/json"
 	"errors"
 	"fmt"
+	"io"
 	"io/fs"
 	"os"
 	"path/filepath"
@@ -155,13 +156,16 @@ func (m Manifest) write(dir string) error {
 	if err != nil {
 		return err
 	}
-	f, err := os.CreateTemp(dir, temporaryPrefix+"*")
+	f, temporary, err := createManifest(dir)
 	if err != nil {
 		return err
 	}
-	defer os.Remove(f.Name())
-	f.Chmod(0o644) // others may merge what one has run
-	_, err = f.Write(append(data, '\n'))
+	defer os.Remove(temporary)
+	data = append(data, '\n')
+	n, err := f.Write(data)
+	if err == nil && n < len(data) {
+		err = io.ErrShortWrite
+	}
 	if err == nil {
 		err = f.Sync()
 	}
@@ -172,8 +176,10 @@ func (m Manifest) write(dir string) error {
 		return err
 	}
 	name := filepath.Join(dir, manifestName)
-	if err := os.Link(f.Name(), name); err != nil && !errors.Is(err, fs.ErrExist) {
-		return os.Rename(f.Name(), name) // a file system without links
+	if err := link(temporary, name); err != nil && !errors.Is(err, fs.ErrExist) {
+		if err := rename(temporary, name); err != nil { // a file system without links
+			return err
+		}
 	}
-	return nil
+	return syncFolder(dir)
 }
