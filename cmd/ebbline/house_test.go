@@ -31,13 +31,14 @@ var mayImport = map[string][]string{
 	"reports/internal/invented": {"pva", "pva/estimate"}, // an assessment for tests of the renderers
 	"pva/sweep":                 {"pva", "pva/rates", "pva/year", "pva/ensemble", "pva/exact", "pva/estimate", "pva/assess", "pva/sweep/ledger"},
 	"pva/sweep/ledger":          {"pva"},
+	"pva/sweep/cluster":         {"pva/sweep", "pva/sweep/ledger"},
 	"pva/draws":                 {"pva", "pva/rates", "rng"},
 	"pva/fit":                   {"pva", "pva/estimate", "pva/rates", "rng"},
 	"reports/figure":            {"reports", "pva"},
 	"reports/workbook":          {"reports", "pva"},
 	"reports/text":              {"reports", "pva", "pva/rates", "pva/sweep", "pva/fit"},
 	"reports/tidy":              {"reports", "pva", "pva/sweep", "pva/fit"},
-	"cmd/ebbline":               {"pva", "pva/assess", "pva/casefile", "pva/casefile/examples", "pva/casefile/sheet", "pva/estimate", "pva/exact", "pva/rates", "pva/sweep", "pva/sweep/ledger", "pva/fit", "reports", "reports/text", "reports/tidy", "reports/workbook", "reports/figure"},
+	"cmd/ebbline":               {"pva", "pva/assess", "pva/casefile", "pva/casefile/examples", "pva/casefile/sheet", "pva/estimate", "pva/exact", "pva/rates", "pva/sweep", "pva/sweep/ledger", "pva/sweep/cluster", "pva/fit", "reports", "reports/text", "reports/tidy", "reports/workbook", "reports/figure"},
 }
 
 // testsMayImport adds what test files may import besides.

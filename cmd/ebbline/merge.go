@@ -6,9 +6,7 @@ import (
 	"strings"
 
 	"ebbline/pva"
-	"ebbline/pva/casefile"
 	"ebbline/pva/sweep"
-	"ebbline/pva/sweep/ledger"
 
 	"github.com/spf13/cobra"
 )
@@ -21,9 +19,10 @@ func newMerge(a *app) *cobra.Command {
 		Long: `Reads the ledgers of the shards of one sweep, finds the largest take within the
 limit, and writes the report that one run of the whole sweep would have written.
 Names what is missing, and refuses ledgers of another case, version or seed.
+In place of the ledgers it takes the folder of a job written by sweep --slurm.
 
 ` + statusHelp,
-		Example: "  ebbline merge goat-1.ledger goat-2.ledger --out goat.xlsx",
+		Example: "  ebbline merge goat-1.ledger goat-2.ledger --out goat.xlsx\n  ebbline merge goat.job",
 		Args:    cobra.MinimumNArgs(1),
 		RunE:    func(_ *cobra.Command, args []string) error { return a.merge(o, args) },
 	}
@@ -38,27 +37,18 @@ func (a *app) merge(o *sweepOptions, dirs []string) error {
 	if err := o.longRun.check(); err != nil {
 		return err
 	}
-	m, err := ledger.ReadManifest(dirs[0])
+	given := dirs[0]
+	m, dirs, job, err := o.mergeFrom(dirs)
 	if err != nil {
 		return badInput{err}
 	}
 	if m.Command != "sweep" {
-		return badInputf("%s is the ledger of `ebbline %s`, which has no shards to merge", dirs[0], m.Command)
+		return badInputf("%s is the ledger of `ebbline %s`, which has no shards to merge", given, m.Command)
 	}
 	name := m.CaseFile
-	c, faults := casefile.Read(name, []byte(m.Case))
-	if len(faults) > 0 {
-		return badInput{fmt.Errorf("%s: the case in the manifest: %w", dirs[0], faults)}
-	}
-	if c, err = overriddenAgain(c, m.Overridden); err != nil {
-		return badInput{fmt.Errorf("%s: %w", dirs[0], err)}
-	}
-	if err := o.takeArguments(m.Arguments); err != nil {
-		return badInput{fmt.Errorf("%s: %w", dirs[0], err)}
-	}
-	study, arguments, err := o.study(c)
+	c, study, arguments, err := o.again(given, m)
 	if err != nil {
-		return badInput{fmt.Errorf("%s: %w", name, err)}
+		return err
 	}
 	book := reportPath(o.book, name, "-sweep")
 	if err := o.checkFiles(book, c, name, "sweep.csv", "search.csv"); err != nil {
@@ -66,12 +56,15 @@ func (a *app) merge(o *sweepOptions, dirs []string) error {
 	}
 	bar := &stages{w: a.errs, quiet: o.quiet}
 	defer bar.finish()
-	runner, err := sweep.Merge(study, dirs, sweep.Options{Workers: o.workers, Command: m.Command, Arguments: arguments, CaseText: m.Case, CaseFile: name, Progress: bar.progress})
+	runner, err := sweep.Merge(study, dirs, sweep.Options{Workers: workersHere(o.workers), Command: m.Command, Arguments: arguments, CaseText: m.Case, CaseFile: name, Progress: bar.progress})
 	if runner != nil {
 		a.tellDamage(runner)
 	}
 	if err != nil {
 		if errors.Is(err, sweep.ErrMissing) {
+			if job != nil {
+				err = missingOf(job, given, err)
+			}
 			return fmt.Errorf("%w; nothing was written", err)
 		}
 		return badInput{err}

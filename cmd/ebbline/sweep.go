@@ -24,6 +24,7 @@ type sweepOptions struct {
 	caseInput
 	outputs
 	longRun
+	slurm      slurmOptions
 	shard      string
 	each       string
 	structures bool
@@ -44,16 +45,23 @@ What is finished is kept in a ledger, a folder beside the case (or --ledger).
 After a stop, a kill or a full disk the same command with --resume goes on where
 it was. A ledger that nobody named is taken away when the report is written.
 
+With --slurm it writes a folder with a job for a Slurm cluster instead: scripts
+that submit it, run its shards and merge them. --submit submits it, --status
+says how far it is, and --slurm DIR --submit --resume submits what is missing.
+
 ` + statusHelp,
 		Example: `  ebbline sweep --example upland-goat
   ebbline sweep goat.toml --each 10% --structures
-  ebbline sweep goat.toml --shard 2/8 --ledger goat-2.ledger`,
+  ebbline sweep goat.toml --shard 2/8 --ledger goat-2.ledger
+  ebbline sweep goat.toml --slurm goat.job --time 1:00:00 --submit
+  ebbline sweep --status goat.job`,
 		Args: cobra.MaximumNArgs(1),
 		RunE: func(_ *cobra.Command, args []string) error { return a.sweep(o, args) },
 	}
 	o.caseInput.addFlags(cmd.Flags())
 	o.outputs.addFlags(cmd.Flags())
 	o.longRun.addFlags(cmd.Flags())
+	o.slurm.addFlags(cmd.Flags())
 	cmd.Flags().StringVar(&o.shard, "shard", "", "run only part `I/N` of the sweep; ebbline merge joins the parts")
 	cmd.Flags().StringVar(&o.each, "each", "", "change each input alone by so many `PERCENT`, such as 10%")
 	cmd.Flags().BoolVar(&o.structures, "structures", false, "try the other defensible forms of the model (and each input by 10%)")
@@ -105,6 +113,9 @@ func shardOf(text string) (i, n int, err error) {
 }
 
 func (a *app) sweep(o *sweepOptions, args []string) error {
+	if handled, err := a.slurm(o, args); handled {
+		return err
+	}
 	c, name, err := o.read(args)
 	if err != nil {
 		return err
@@ -140,6 +151,7 @@ func (a *app) sweep(o *sweepOptions, args []string) error {
 		return err
 	}
 	opt.Example, opt.Arguments, opt.Shard, opt.Shards = o.example, arguments, shard, shards
+	opt.Workers = workersHere(o.workers)
 	// Shards may share a folder: none of them throws away what others did.
 	opt.Restart = o.force && !o.resume && shards == 0
 	ctx, stop := a.interruptible()
@@ -255,7 +267,11 @@ func stopped(ctx context.Context, err error, dir string, done, units int) error 
 	return err
 }
 
+// stoppedSearch is the same for a search, and for files that cannot be written.
 func stoppedSearch(ctx context.Context, err error, dir string) error {
+	if files := (notAllWritten{}); errors.As(err, &files) {
+		return fmt.Errorf("%w; what is finished is kept in %s: make room and run the same command with --resume", err, dir)
+	}
 	if ctx.Err() != nil {
 		return fmt.Errorf("interrupted: what is finished is kept in %s; run the same command with --resume to go on", dir)
 	}
