@@ -167,7 +167,7 @@ func verdictText(a *pva.Assessment) string {
 	default:
 		s = "Undecided: " + has + " straddles" + of + ", so the risk is not shown to be within it."
 		if a.ToDecide > 0 {
-			s += " About " + Grouped(a.ToDecide) + " replicates would settle it."
+			s += " If the estimate stays where it is, about " + Grouped(roughly(a.ToDecide)) + " replicates would settle it."
 		}
 	}
 	if a.Unreliable {
@@ -383,7 +383,7 @@ func verdictOf(low, high, limit float64) pva.Verdict {
 }
 
 func numbersTable(numbers []Number) *Table {
-	b := newTable("numbers", "Five numbers that matter beside it").column("label", "", "", Format{}).column("value", "Value", "", Format{}).wide("note", "")
+	b := newTable("numbers", "Numbers that matter beside it").column("label", "", "", Format{}).column("value", "Value", "", Format{}).wide("note", "")
 	for _, n := range numbers {
 		v := text(n.Text)
 		if !math.IsNaN(n.Value) {

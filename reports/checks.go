@@ -47,7 +47,7 @@ func exactTable(a *pva.Assessment) *Table {
 		column("exact", "Exact", "", Format{Percents, 3}).column("error", "Its error, at most", "", Format{Kind: Small, Digits: 1}).column("difference", "Simulated less exact", "points", Format{Points, 3})
 	if e := exactAnswer(a.Exact); e == nil {
 		b.t.Columns = []Column{{Key: "what", Wide: true}}
-		b.row("none", map[string]Cell{"what": text("There is no exact answer for this case: " + a.Exact.Reason + ".")})
+		b.row("none", map[string]Cell{"what": text("No exact answer stands beside it: " + a.Exact.Reason + ".")})
 		return b.t
 	}
 	row := func(id, what string, p pva.Proportion, e *pva.ExactAnswer, exact float64, where string) {
@@ -187,7 +187,11 @@ func notChecked(a *pva.Assessment) []Paragraph {
 	add("Whether the inputs are right: the checks compare one calculation with another, not with the population.")
 	add("Whether the structure is right: crowding, the laws of the young and the order of the " + a.Case.TimeUnit + " are taken as stated (see Model).")
 	if exactAnswer(a.Exact) == nil {
-		add("The risk against an exact answer: none was found for this case.")
+		why := "it was not asked for (--no-exact)"
+		if a.Exact != nil {
+			why = a.Exact.Reason
+		}
+		add("The risk against an exact answer: " + why + ".")
 	}
 	if a.Outcome.Capped > 0 {
 		add("At-most-one young had a mean above one and was capped " + counted(a.Outcome.Capped, "time") + "; the births are lower than stated in those " + a.Case.TimeUnit + "s.")

@@ -30,7 +30,7 @@ func BuildSweep(s *sweep.Result, largest *sweep.Crossing, meta Meta) *Report {
 	limit := math.NaN()
 	if c.Question.Limit.Set {
 		limit = c.Question.Limit.Value
-		r.VerdictText = "The case as stated: " + string(s.Case.Verdict) + " of " + percentOf(limit) + "." + largestText(largest)
+		r.VerdictText = "The case as stated: " + verdictOn(s.Case.Verdict, limit) + "." + largestText(largest)
 	}
 	if largest != nil {
 		r.Head, r.HeadBeside = crossingHead(largest, "the largest "+largest.Key+" within the limit")
@@ -178,7 +178,7 @@ func crossingNumbers(l *sweep.Crossing, label string) []Number {
 		value.Text = f.Show(l.Value)
 	}
 	ends := Number{ID: "undecided", Label: "values left undecided at " + percentOf(l.Confidence), Value: math.NaN()}
-	low, high := l.Low(), l.High()
+	low, high := l.Undecided()
 	show := func(v float64, open string) string {
 		if math.IsNaN(v) {
 			return open
@@ -189,7 +189,7 @@ func crossingNumbers(l *sweep.Crossing, label string) []Number {
 	switch {
 	case (math.IsNaN(low) || math.IsNaN(high)) && l.Settled():
 		ends.Text, ends.Note = "none", "of those looked at"
-	case low == high:
+	case l.Low() == l.High():
 		ends.Text = "none"
 		ends.Note = "every value on one side is shown within the limit, every one on the other above it"
 	}
@@ -206,10 +206,21 @@ func largestText(l *sweep.Crossing) string {
 	}
 	n := crossingNumbers(l, "")
 	s := " The largest " + l.Key + " within it is " + n[0].Text
+	if l.Verdict == pva.Undecided {
+		s = " The largest " + l.Key + " estimated to be within it is " + n[0].Text + ", which is not shown"
+	}
 	if n[1].Text != "none" {
 		s += "; undecided are " + n[1].Text
 	}
 	return s + "."
+}
+
+// verdictOn joins a verdict and its limit.
+func verdictOn(v pva.Verdict, limit float64) string {
+	if v == pva.Undecided {
+		return string(v) + " against the limit of " + percentOf(limit)
+	}
+	return string(v) + " of " + percentOf(limit)
 }
 
 func sizeWords(q *sweep.Sizes) string {
@@ -239,6 +250,9 @@ func minimumText(q *sweep.Sizes, l *sweep.Crossing) string {
 		return "No minimum: " + l.Reason + "."
 	}
 	s := "The smallest viable " + sizeWords(q) + " is " + Plain(l.Value)
+	if l.Verdict == pva.Undecided {
+		s = "The smallest " + sizeWords(q) + " estimated to be viable is " + Plain(l.Value) + ", which is not shown"
+	}
 	if n := crossingNumbers(l, ""); n[1].Text != "none" {
 		s += "; undecided are " + n[1].Text
 	}

@@ -37,6 +37,18 @@ func shareText(p float64) string {
 	return strconv.FormatFloat(100*p, 'f', 0, 64) + " %"
 }
 
+// fewDraws is how many draws are too few to say how many would be enough.
+const fewDraws = 20
+
+// roughly rounds up to two digits: what it says of a number to come is no more.
+func roughly(n int64) int64 {
+	unit := int64(1)
+	for n/unit >= 100 {
+		unit *= 10
+	}
+	return (n + unit - 1) / unit * unit
+}
+
 // carryUncertainty says in a report's headline what its interval and verdict rest
 // on where inputs are uncertain. It changes nothing of other reports.
 func (r *Report) carryUncertainty(a *pva.Assessment) {
@@ -46,6 +58,11 @@ func (r *Report) carryUncertainty(a *pva.Assessment) {
 	}
 	risk := &r.Figures[0]
 	risk.Note = percentOf(r.Confidence) + " interval between " + counted(int64(u.Draws), "draw") + " of the uncertain inputs, " + counted(a.Outcome.Risk.Of, "replicate")
+	if m := u.Case.Mean; len(u.Case.Exact) > 0 {
+		// The verdict rests on it, so that it leads.
+		risk.Lead = Percent(m.Estimate, u.Case.Pooled.Of)
+		risk.Beside = PercentRange(m.Low, m.High, u.Case.Pooled.Of) + ", exact in each draw"
+	}
 	limit := a.Case.Question.Limit
 	if r.VerdictText == "" {
 		return
@@ -63,8 +80,8 @@ func (r *Report) carryUncertainty(a *pva.Assessment) {
 		s = "Above the limit: " + has + " lies above" + of + "."
 	default:
 		s = "Undecided: " + has + " straddles" + of + ", so the mean risk is not shown to be within it."
-		if a.ToDecide > 0 {
-			s += " About " + Grouped(a.ToDecide/u.Each) + " draws, with as many replicates each, would settle it."
+		if a.ToDecide > 0 && u.Draws >= fewDraws {
+			s += " If the mean stays where it is, about " + Grouped(roughly(a.ToDecide/u.Each)) + " draws, with as many replicates each, would settle it."
 		}
 	}
 	if a.Unreliable {

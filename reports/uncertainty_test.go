@@ -44,9 +44,18 @@ func TestUncertaintyPart(t *testing.T) {
 	a := drawn(false)
 	u := &a.Uncertainty.Case
 	r := Build(a, Meta{})
-	for _, want := range []string{"Undecided: the interval between draws, " + PercentRange(0.04, 0.16, 400) + ", straddles the limit of 10 %", "About 16 draws", "In 83 % (79 % to 87 %) of the draws the risk is within the limit of 10 %."} {
+	for _, want := range []string{"Undecided: the interval between draws, " + PercentRange(0.04, 0.16, 400) + ", straddles the limit of 10 %", "In 83 % (79 % to 87 %) of the draws the risk is within the limit of 10 %."} {
 		if !strings.Contains(r.VerdictText, want) {
 			t.Errorf("verdict %q does not say %q", r.VerdictText, want)
+		}
+	}
+	// Four draws are too few to say how many would be enough.
+	if strings.Contains(r.VerdictText, "would settle it") {
+		t.Errorf("verdict %q", r.VerdictText)
+	}
+	for n, want := range map[int64]int64{1: 1, 99: 99, 100: 100, 101: 110, 1727: 1800, 17273: 18000} {
+		if got := roughly(n); got != want {
+			t.Errorf("roughly %d is %d, want %d", n, got, want)
 		}
 	}
 	if want := "interval between 4 draws of the uncertain inputs"; !strings.Contains(r.Figures[0].Note, want) {

@@ -35,6 +35,9 @@ func riskPart(a *pva.Assessment, s scores) Part {
 
 // intervalsOf names the method behind the intervals of probabilities.
 func intervalsOf(a *pva.Assessment) string {
+	if a.Uncertainty != nil {
+		return "between draws, by betting (Waudby-Smith & Ramdas 2024)"
+	}
 	if a.Sequential {
 		return "those of confidence sequences, which hold at every look (Robbins 1970, Howard et al. 2021)"
 	}

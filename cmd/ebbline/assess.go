@@ -45,7 +45,7 @@ report workbook beside the case (or to --out).
 	o.caseInput.addFlags(cmd.Flags())
 	o.outputs.addFlags(cmd.Flags())
 	cmd.Flags().IntVar(&o.workers, "workers", 0, "how many replicates run side by side (default: all cores)")
-	cmd.Flags().BoolVar(&o.untilDecided, "until-decided", false, "add replicates until the verdict is settled, with an interval that holds under repeated looks")
+	cmd.Flags().BoolVar(&o.untilDecided, "until-decided", false, "add up to 256 times the replicates until the verdict is settled, with intervals that hold at every look")
 	cmd.Flags().BoolVar(&o.exact, "exact", false, "add the exact answer even where it is dear")
 	cmd.Flags().BoolVar(&o.noExact, "no-exact", false, "leave the exact answer out")
 	cmd.Flags().BoolVar(&o.failAboveLimit, "fail-above-limit", false, "end with exit status 3 if the verdict is above the limit")
@@ -118,7 +118,7 @@ func (a *app) assess(o *assessOptions, args []string) error {
 
 // run assesses the case once, or until its verdict is settled.
 func (o *assessOptions) run(ctx context.Context, a *app, c *pva.Case, wish assess.ExactWish) (*pva.Assessment, error) {
-	opt := assess.Options{Workers: o.workers, Exact: wish}
+	opt := assess.Options{Workers: workersHere(o.workers), Exact: wish}
 	if o.untilDecided {
 		s, err := assess.UntilDecided(ctx, c, opt, 0)
 		if s == nil {

@@ -151,7 +151,6 @@ func (a *app) sweep(o *sweepOptions, args []string) error {
 		return err
 	}
 	opt.Example, opt.Arguments, opt.Shard, opt.Shards = o.example, arguments, shard, shards
-	opt.Workers = workersHere(o.workers)
 	// Shards may share a folder: none of them throws away what others did.
 	opt.Restart = o.force && !o.resume && shards == 0
 	ctx, stop := a.interruptible()
@@ -321,6 +320,6 @@ func (l *longRun) options(command, name, kind string, c *pva.Case) sweep.Options
 		dir = strings.TrimSuffix(filepath.Base(name), filepath.Ext(name)) + kind + ".ledger"
 		dir = filepath.Join(filepath.Dir(name), dir)
 	}
-	return sweep.Options{Workers: l.workers, Ledger: dir, Resume: l.resume, Command: command,
+	return sweep.Options{Workers: workersHere(l.workers), Ledger: dir, Resume: l.resume, Command: command,
 		CaseText: string(casefile.Write(c)), CaseFile: name}
 }

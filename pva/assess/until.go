@@ -110,6 +110,9 @@ func UntilDecided(ctx context.Context, c *pva.Case, opt Options, most int64) (*S
 		s.Asked = s.Replicates
 	}
 	s.Warnings = append(Warnings(c, set[0].model), runWarnings(s.Assessment)...)
+	if err == nil && !s.Decided {
+		s.Warnings = append(s.Warnings, pva.Warning{Key: "run.replicates", Text: grouped.Sprintf("stopped undecided at %d replicates, the most that are added; to go on, begin with more (--replicates)", s.Replicates)})
+	}
 	return s, err
 }
 

@@ -21,6 +21,11 @@ func Warnings(c *pva.Case, m *rates.Model) []pva.Warning {
 	warn := func(key, format string, a ...any) {
 		out = append(out, pva.Warning{Key: key, Text: grouped.Sprintf(format, a...)})
 	}
+	for _, e := range c.Entries() {
+		if (e.Path == "question.threshold" || e.Path == "question.horizon") && e.Source == "assumed" {
+			warn(e.Path, "is assumed, and nobody has stated it: the whole answer hangs on it")
+		}
+	}
 	if c.Start.Abundance <= c.Question.Threshold {
 		warn("start.abundance", "the population starts at or below the threshold, so that it falls at the first census unless it grows at once")
 	}

@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"strconv"
 	"strings"
 
 	"ebbline/pva"
@@ -198,11 +199,11 @@ func gridBreaks(grid *Result, rising bool) []Break {
 
 // explain puts into words why there is no largest value, or what is special.
 func (c *Crossing) explain() {
-	x := func(v float64) string { return pva.Num(v).Text }
+	x := func(v float64) string { return strconv.FormatFloat(v, 'g', 6, 64) }
 	switch {
 	case !c.Rising && c.Found:
 		c.Found = false
-		c.Reason = fmt.Sprintf("the risk falls as %s rises: it is within the limit from about %s up, and there is no largest value", c.Key, x(c.Value))
+		c.Reason = fmt.Sprintf("the risk falls as %s rises: it is within the limit from about %s up", c.Key, x(c.Value))
 	case !c.Rising:
 		c.Reason = fmt.Sprintf("the risk falls as %s rises, and is above the limit even at %s", c.Key, x(c.To))
 	case !c.Found && c.Points[0].Verdict == pva.AboveLimit:

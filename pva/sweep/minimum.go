@@ -27,7 +27,8 @@ type Sizes struct {
 
 // NewMinimum is the question of a case's [minimum] table. It fills in what the
 // table leaves open: the permit's limit, the question's horizon, sizes from just
-// above the threshold to 100 times the start.
+// above the threshold to 100 times the start, but starts no further than three times
+// what the population can hold, and none above a ceiling.
 func NewMinimum(c *pva.Case) (*Study, *Sizes, error) {
 	q := &Sizes{Vary: c.Minimum.Vary, Horizon: int(c.Minimum.Horizon.Or(float64(c.Question.Horizon)))}
 	switch {
@@ -60,7 +61,17 @@ func NewMinimum(c *pva.Case) (*Study, *Sizes, error) {
 		stands = q.Capacity
 	}
 	q.From = math.Ceil(c.Minimum.From.Or(math.Floor(c.Question.Threshold) + 1))
-	q.To = math.Floor(c.Minimum.To.Or(math.Max(1000, 100*stands)))
+	most := math.Max(1000, 100*stands)
+	if q.Vary == "start" {
+		// A start far above what the population can hold says nothing of size.
+		if k := resting(s.base); k > 0 {
+			most = math.Min(most, 3*math.Max(k, stands))
+		}
+		if c.Ceiling.Set {
+			most = math.Min(most, math.Max(c.Ceiling.Value, stands))
+		}
+	}
+	q.To = math.Floor(c.Minimum.To.Or(most))
 	q.From = math.Max(1, q.From)
 	if q.From >= q.To {
 		return nil, nil, fmt.Errorf("minimum.to: %v is not above the smallest size tried, %v; give a larger one", q.To, q.From)
@@ -93,6 +104,21 @@ func capacityOf(m *rates.Model) (float64, error) {
 		return c.Ceiling.Value, nil
 	}
 	return 0, errors.New("minimum.vary: the case has neither crowding nor a ceiling, so that there is no capacity to vary; vary = \"start\"")
+}
+
+// within is the smallest and the largest value looked at that are shown within
+// the limit.
+func (c *Crossing) within() (low, high float64, any bool) {
+	for _, p := range c.Points { // ascending
+		if p.Verdict != pva.Within {
+			continue
+		}
+		if !any {
+			low = p.Value
+		}
+		high, any = p.Value, true
+	}
+	return low, high, any
 }
 
 // firstSizes is how many sizes are looked at before the search narrows, evenly
@@ -130,6 +156,13 @@ func (r *Runner) Smallest(ctx context.Context, q *Sizes, opt SearchOptions) (*Cr
 		}
 	case !out.Found && biggest.Verdict == pva.AboveLimit:
 		out.Reason = "none up to " + x(q.To)
+		if low, high, any := out.within(); any {
+			out.Reason = "none from which on all are viable: of those looked at, " + x(low) + " to " + x(high) + " are within the limit, and larger ones up to " + x(q.To) + " are not"
+			if q.Vary == "start" {
+				out.Reason += " (a start far above what the population can hold may crash)"
+			}
+			out.Reason += "; look no further than minimum.to = " + x(high)
+		}
 	case !out.Found:
 		out.Reason = "none is shown to be viable up to " + x(q.To)
 	case out.Value == q.From && math.IsNaN(out.Other):

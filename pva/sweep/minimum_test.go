@@ -3,6 +3,7 @@ package sweep
 import (
 	"context"
 	"math"
+	"strings"
 	"testing"
 
 	"ebbline/pva"
@@ -153,6 +154,27 @@ func TestSteepRise(t *testing.T) {
 		}
 		if got.At() == nil || got.At().Value != got.Value || next != got.Value+1 && got.Value != got.To {
 			t.Errorf("seed %d: %v, the next looked at %v", seed+1, got.Value, next)
+		}
+	}
+}
+
+// TestLargeStartsCrash: where a start far above the capacity crashes, the sizes
+// that are within the limit are named, and a start left open goes no further than
+// three times the capacity, nor beyond a ceiling.
+func TestLargeStartsCrash(t *testing.T) {
+	c := caseOf(t, "question.threshold", 5, "question.horizon", 10, "question.limit", .3, "start.abundance", 60, "births.breeding", "pulse", "births.parents", "all", "births.rate", 4, "births.year_sd", .5,
+		"births.crowding.form", "ricker", "births.crowding.capacity", 116.8, "deaths.fraction", 1, "run.replicates", 500, "run.seed", 2, "minimum.vary", "start", "minimum.from", 6, "minimum.to", 100000)
+	got := solve(t, c, true, SearchOptions{NoExact: true})
+	low, high, any := got.within()
+	if got.Found || !any || low < 6 || high >= 100000 || !strings.Contains(got.Reason, "are within the limit, and larger ones up to 100000 are not") {
+		t.Errorf("found %v: %s", got.Found, got.Reason)
+	}
+	for most, c := range map[float64]*pva.Case{
+		360: marsh(t), // its capacity is 120
+		90:  marsh(t, "ceiling.abundance", 90),
+	} {
+		if _, q, err := NewMinimum(c); err != nil || math.Abs(q.To-most) > 1 {
+			t.Errorf("starts up to %v, want %v (%v)", q.To, most, err)
 		}
 	}
 }

@@ -94,6 +94,20 @@ func (c *Crossing) Settled() bool {
 	return true
 }
 
+// Undecided is the stretch of values whose verdict is left open: Low and High,
+// but for whole values without the end that is shown to be within the limit.
+func (c *Crossing) Undecided() (low, high float64) {
+	low, high = c.Low(), c.High()
+	switch {
+	case !c.Whole || low == high:
+	case c.Rising:
+		low++
+	default:
+		high--
+	}
+	return low, high
+}
+
 // Break is a step of a curve that goes the wrong way: the risk at Riskier, which
 // should be the safer of the two, is above that at Safer by Difference.
 type Break struct {

@@ -2,6 +2,8 @@ package text
 
 import (
 	"fmt"
+	"math"
+	"slices"
 	"strings"
 
 	"ebbline/pva"
@@ -19,11 +21,21 @@ func Minimum(s *sweep.Study, q *sweep.Sizes, l *sweep.Crossing, file string) str
 	b.WriteString(wrap(ask, "", 0) + "\n")
 	b.WriteString(wrap(MinimumWords(c, q, l), "  ", 0) + "\n")
 	rows := [][]string{{"size", "risk", "interval", "rests on", ""}}
-	points := l.Points
+	points, note := l.Points, ""
 	if len(points) > most {
 		kept := points[:0:0]
 		for i := range most {
 			kept = append(kept, points[i*(len(points)-1)/(most-1)])
+		}
+		note = fmt.Sprintf("%d of %d sizes are shown; the report holds all.", most, len(points))
+		if at := l.At(); !slices.Contains(kept, at) { // in place of its nearest neighbour
+			near := 0
+			for i, p := range kept {
+				if math.Abs(p.Value-at.Value) < math.Abs(kept[near].Value-at.Value) {
+					near = i
+				}
+			}
+			kept[near] = at
 		}
 		points = kept
 	}
@@ -40,6 +52,9 @@ func Minimum(s *sweep.Study, q *sweep.Sizes, l *sweep.Crossing, file string) str
 		rows = append(rows, []string{reports.Plain(p.Value), reports.Percent(p.Risk.Estimate, digits), interval, on, shortVerdict(p.Verdict)})
 	}
 	b.WriteString(columns(rows, "  ", true, true, false, false))
+	if note != "" {
+		b.WriteString(wrap(note, "  ", 0))
+	}
 	b.WriteString(doubts(l.Warnings(s)))
 	return b.String() + "\n" + cautions(c)
 }
@@ -49,7 +64,11 @@ func MinimumWords(c *pva.Case, q *sweep.Sizes, l *sweep.Crossing) string {
 	if !l.Found {
 		return "No minimum: " + l.Reason + "."
 	}
-	s := fmt.Sprintf("The smallest %s that is viable in this sense is %s", varied(q), pointText(l, l.Value)) + between(l, c.Question.Confidence) + ". " + evidence(l) + "."
+	s := fmt.Sprintf("The smallest %s that is viable in this sense is %s", varied(q), pointText(l, l.Value))
+	if l.Verdict == pva.Undecided {
+		s = fmt.Sprintf("The smallest %s estimated to be viable in this sense is %s, which is not shown", varied(q), pointText(l, l.Value)) + shownTo(l)
+	}
+	s += between(l, c.Question.Confidence) + ". " + evidence(l) + "."
 	if l.Reason != "" {
 		s += " Note: " + l.Reason + "."
 	}

@@ -180,7 +180,11 @@ func LargestWords(c *pva.Case, l *sweep.Crossing) string {
 	if !l.Found {
 		return "No largest value of " + l.Key + ": " + l.Reason + "."
 	}
-	s := fmt.Sprintf("The largest %s within the limit of %s is %s", l.Key, reports.Significant(100*l.Limit, 6)+" %", pointText(l, l.Value))
+	limit := reports.Significant(100*l.Limit, 6) + " %"
+	s := fmt.Sprintf("The largest %s within the limit of %s is %s", l.Key, limit, pointText(l, l.Value))
+	if l.Verdict == pva.Undecided {
+		s = fmt.Sprintf("The largest %s estimated to be within the limit of %s is %s, which is not shown", l.Key, limit, pointText(l, l.Value)) + shownTo(l)
+	}
 	s += between(l, c.Question.Confidence) + ". " + evidence(l) + "."
 	if l.Reason != "" {
 		s += " Note: " + l.Reason + "."
@@ -188,12 +192,23 @@ func LargestWords(c *pva.Case, l *sweep.Crossing) string {
 	return s
 }
 
+// shownTo is how far a search's values are shown to be within the limit.
+func shownTo(l *sweep.Crossing) string {
+	switch {
+	case math.IsNaN(l.Safe):
+		return "; none is shown to be"
+	case l.Rising:
+		return "; up to " + pointText(l, l.Safe) + " is shown to be"
+	}
+	return "; from " + pointText(l, l.Safe) + " up is shown to be"
+}
+
 // between says between which values the verdict is undecided.
 func between(l *sweep.Crossing, confidence float64) string {
-	low, high := l.Low(), l.High()
+	low, high := l.Undecided()
 	at := " at " + reports.Significant(100*confidence, 4) + " %"
 	switch {
-	case !math.IsNaN(low) && !math.IsNaN(high) && low == high:
+	case !math.IsNaN(low) && !math.IsNaN(high) && l.Low() == l.High():
 		return ", and no other value is in doubt" + at
 	case (math.IsNaN(low) || math.IsNaN(high)) && l.Settled():
 		return ", and no value looked at is left undecided" + at
@@ -204,7 +219,10 @@ func between(l *sweep.Crossing, confidence float64) string {
 	case math.IsNaN(high):
 		return "; from " + pointText(l, low) + " up the verdict is undecided" + at
 	}
-	return "; between " + pointText(l, low) + " and " + pointText(l, high) + " the verdict is undecided" + at
+	if low == high {
+		return "; for " + pointText(l, low) + " the verdict is undecided" + at
+	}
+	return "; from " + pointText(l, low) + " to " + pointText(l, high) + " the verdict is undecided" + at
 }
 
 // evidence is what the answer rests on.
