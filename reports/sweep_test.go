@@ -147,7 +147,7 @@ func TestMattersReport(t *testing.T) {
 func TestMinimumReport(t *testing.T) {
 	for want, c := range map[string]*pva.Case{
 		"The smallest start estimated to be viable is": pond(t, "minimum.from", 12, "minimum.to", 400),
-		"No minimum: none up to 40":    pond(t, "minimum.from", 12, "minimum.to", 40, "minimum.risk", .0001),
+		"No minimum: none up to 40":                    pond(t, "minimum.from", 12, "minimum.to", 40, "minimum.risk", .0001),
 	} {
 		s, q, err := sweep.NewMinimum(c)
 		if err != nil {
