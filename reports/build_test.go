@@ -267,3 +267,30 @@ func modelAndCautions(t *testing.T) string {
 	}
 	return b.String()
 }
+
+// TestReferencesOfMethods: the report cites the methods that its intervals are
+// by, and no others.
+func TestReferencesOfMethods(t *testing.T) {
+	cites := func(r *Report, author string) bool {
+		for _, s := range r.Part(PartCautions).Sections {
+			for _, p := range s.Paragraphs {
+				if p.Kind == Reference && strings.HasPrefix(p.Text, author) {
+					return true
+				}
+			}
+		}
+		return false
+	}
+	one, _ := built(t, invented.Case(), false)
+	one.Sequential = false
+	looks := *one
+	looks.Sequential = true
+	for author, in := range map[string][2]bool{"Newcombe": {true, false}, "Robbins": {false, true}, "Howard": {false, true}, "McCarthy": {true, true}} {
+		if got := [2]bool{cites(Build(one, Meta{}), author), cites(Build(&looks, Meta{}), author)}; got != in {
+			t.Errorf("%s: cited %v of one look and of many, want %v", author, got, in)
+		}
+	}
+	if r := Build(drawn(false), Meta{}); !cites(r, "Waudby-Smith") || cites(r, "Newcombe") {
+		t.Error("the methods of uncertain inputs are not cited")
+	}
+}

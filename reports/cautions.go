@@ -1,6 +1,7 @@
 package reports
 
 import (
+	"slices"
 	"strings"
 
 	"ebbline/pva"
@@ -29,8 +30,22 @@ const (
 	grimm2020  = "Grimm, V. et al. 2020. The ODD protocol for describing agent-based and other simulation models: a second update. J. Artif. Soc. Soc. Simul. 23(2):7."
 	mccarthy   = "McCarthy, M. A. & Thompson, C. 2001. Expected minimum population size as a measure of threat. Anim. Conserv. 4:379-386."
 	wilson1927 = "Wilson, E. B. 1927. Probable inference, the law of succession, and statistical inference. J. Am. Stat. Assoc. 22:209-212."
+	robbins    = "Robbins, H. 1970. Statistical methods related to the law of the iterated logarithm. Ann. Math. Stat. 41:1397-1409."
+	howard     = "Howard, S. R., Ramdas, A., McAuliffe, J. & Sekhon, J. 2021. Time-uniform, nonparametric, nonasymptotic confidence sequences. Ann. Stat. 49:1055-1080."
+	betting    = "Waudby-Smith, I. & Ramdas, A. 2024. Estimating means of bounded random variables by betting. J. R. Stat. Soc. B 86:1-27."
 	newcombe   = "Newcombe, R. G. 1998. Improved confidence intervals for the difference between binomial proportions based on paired data. Stat. Med. 17:2635-2650."
 )
+
+// methodsOf are the references of the methods behind an assessment's intervals.
+func methodsOf(a *pva.Assessment) []string {
+	switch {
+	case a.Uncertainty != nil:
+		return []string{betting, wilson1927}
+	case a.Sequential:
+		return []string{robbins, howard}
+	}
+	return []string{wilson1927, newcombe}
+}
 
 // Cautions are what every answer carries, worded for this case: in short, and in whole.
 func Cautions(c *pva.Case) (short, long []Caution) {
@@ -238,7 +253,7 @@ func cautionsPart(c *pva.Case, r *Report) Part {
 		}
 		p.Sections = append(p.Sections, s)
 	}
-	for _, ref := range []string{wilson1927, newcombe, mccarthy} {
+	for _, ref := range append(slices.Clone(r.methods), mccarthy) {
 		refs = append(refs, Paragraph{Text: ref, Kind: Reference})
 	}
 	p.Sections = append(p.Sections, Section{Heading: "References", Paragraphs: refs})

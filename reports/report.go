@@ -33,6 +33,7 @@ type Report struct {
 	Seed                     uint64
 	Replicates, Asked        int64 // finished and asked for
 	Confidence               float64
+	methods                  []string // references of the methods behind its intervals
 	Verdict                  pva.Verdict
 	VerdictText              string // the verdict and what it rests on, in a sentence; "" without a limit
 	// Head is the large figure of the first page where the answer is no risk (a
@@ -143,6 +144,7 @@ func Build(a *pva.Assessment, meta Meta) *Report {
 		Numbers:    numbers(a),
 		Provenance: ProvenanceOf(c),
 	}
+	r.methods = methodsOf(a)
 	r.VerdictText = verdictText(a)
 	r.carryUncertainty(a)
 	r.ShortCautions, r.Cautions = Cautions(c)

@@ -84,6 +84,7 @@ func sweepReport(s *sweep.Study, meta Meta, risk pva.Proportion, v pva.Verdict, 
 	c := s.Base
 	r := &Report{Meta: meta, Title: titleOf(c, meta.CaseFile), Prepared: c.Prepared, Purpose: c.Purpose, Question: Question(c), Digest: c.Digest(), Seed: c.Run.Seed,
 		Replicates: replicates, Asked: replicates, Confidence: c.Question.Confidence, Verdict: v, Provenance: provenance(InputsTable(c))}
+	r.methods = []string{wilson1927, newcombe, robbins, howard} // of the grid, and of the search
 	f := proportionFigure("risk", "the case as stated", risk)
 	f.Note = percentOf(c.Question.Confidence) + " interval, " + counted(risk.Of, "replicate")
 	if risk.Of == 0 {

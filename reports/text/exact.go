@@ -21,7 +21,7 @@ func Exact(c *pva.Case, name string, e *pva.ExactAnswer, verdict pva.Verdict, wa
 		rows = append(rows, []string{"the permit's limit", reports.Significant(100*c.Question.Limit.Value, 6) + " %", string(verdict)})
 	}
 	b.WriteString(columns(rows, "  "))
-	b.WriteString("\n" + wrap(fmt.Sprintf("Method: %s; populations up to %s followed, %d points of weather a year.", e.Method, reports.Grouped(int64(e.States)), max(1, e.Nodes)), "  ", 0))
+	b.WriteString("\n" + wrap(fmt.Sprintf("Method: %s; populations up to %s followed, %s of weather a year.", e.Method, reports.Grouped(int64(e.States)), countOf(int64(max(1, e.Nodes)), "point")), "  ", 0))
 	last := c.Question.Horizon
 	rows = [][]string{{c.TimeUnit, "fallen by then", "none left"}}
 	for y := 1; y <= last; y++ {
