@@ -11,7 +11,7 @@ import (
 // Options say what is asked of a series. The zero value of a field is its
 // default.
 type Options struct {
-	Threshold  float64  // abundance counted as fallen; default a tenth of the last count
+	Threshold  float64  // abundance counted as fallen; default a tenth of the last count, in whole units
 	Horizon    int      // time units ahead; default 50, at most 1000
 	Confidence float64  // level of every interval; default 0.95
 	Seed       uint64   // names the random numbers of those draws; default 1
@@ -85,6 +85,9 @@ func Fit(s *Series, o Options) (*Result, error) {
 func (o Options) complete(p *prepared) (Options, error) {
 	if o.Threshold == 0 {
 		o.Threshold = p.last() / 10
+		if o.Threshold >= 1 { // whole animals, as a case has them
+			o.Threshold = math.Floor(o.Threshold)
+		}
 	}
 	if o.Horizon == 0 {
 		o.Horizon = defaultHorizon
@@ -188,6 +191,9 @@ func (r *Result) doubts() []pva.Warning {
 		doubt("process and observation error cannot be told apart: observation error may be anything from %.0f to %.0f %% of the variance of a one-%s change; state the counts' own errors (column se or cv) if they are known", 100*s.Share.Low, 100*s.Share.High, u)
 	case s.Observation.Value == 0:
 		doubt("the counts show no observation error, which does not mean that there is none: up to %.0f %% of the variance of a one-%s change would pass unseen", 100*s.Share.High, u)
+	}
+	if r.Options.Threshold >= r.LastCount {
+		doubt("the last count, %.4g, is at or below the threshold of %.4g: the population has fallen already, and the risk says nothing", r.LastCount, r.Options.Threshold)
 	}
 	if float64(r.Options.Horizon) > r.Drift.Span/5 {
 		doubt("looking %d %ss ahead needs five times as many of counts (Fieberg & Ellner 2000, Ecology 81:2040-2047); these span %s", r.Options.Horizon, u, dateText(r.Drift.Span))

@@ -210,6 +210,9 @@ func (r *reading) named(i int) bool {
 // grouped is a number in groups of three, as 1.200 is where decimals have a comma.
 var grouped = regexp.MustCompile(`^[1-9][0-9]{0,2}(\.[0-9]{3})+$`)
 
+// decimalComma is a number with one.
+var decimalComma = regexp.MustCompile(`^[0-9]+,[0-9]+$`)
+
 // number reads a decimal number; nothing else that a parser would take.
 func (r *reading) number(s string) (float64, error) {
 	if r.comma && strings.Count(s, ",") == 1 && !strings.Contains(s, ".") {

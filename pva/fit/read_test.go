@@ -68,6 +68,7 @@ func TestReadWrong(t *testing.T) {
 		"\xff\xfey\x00":                         "is not UTF-8",
 		"PK\x03\x04":                            "is a workbook",
 		"year;count\n1990;1.200\n":              `x.csv:2:6: count: "1.200" may be in thousands or a decimal number; write 1200, or 1,200 with a decimal comma`,
+		"year,count\n1990,\"200,5\"\n":          `x.csv:2:6: count: "200,5" is not a number here; write it with a decimal point, or part the columns by semicolons`,
 		"Jahr;Anzahl\n1990;3\n":                 `"Jahr" is no column`,
 		"year;count\nä;1\n1990;é\n":             `x.csv:3:6: count: "é" is not a number`,
 		"note;year;count\nöö;1990;é\n":          `x.csv:2:9: count: "é"`,

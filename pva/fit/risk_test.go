@@ -3,6 +3,7 @@ package fit
 import (
 	"math"
 	"sort"
+	"strings"
 	"testing"
 
 	"gonum.org/v1/gonum/stat/distuv"
@@ -88,6 +89,23 @@ func TestRiskCoverage(t *testing.T) {
 			if estimate.BinomialTailWidened(n, series, 0.0255, 0.0085) < level {
 				t.Errorf("%+v: the interval lies %s in %d of %d series", truth, what, n, series)
 			}
+		}
+	}
+}
+
+// TestFallenAlready: a threshold at or above the last count is told of.
+func TestFallenAlready(t *testing.T) {
+	for threshold, want := range map[float64]bool{0: false, 1e6: true} {
+		r, err := Fit(noisySeries(3, .02, .01), Options{Threshold: threshold, Resamples: 100})
+		if err != nil {
+			t.Fatal(err)
+		}
+		said := false
+		for _, d := range r.Doubts {
+			said = said || strings.Contains(d.Text, "has fallen already")
+		}
+		if said != want || threshold == 0 && r.Options.Threshold != math.Floor(r.LastCount/10) {
+			t.Errorf("threshold %v: %v, in force %v", threshold, r.Doubts, r.Options.Threshold)
 		}
 	}
 }

@@ -167,6 +167,8 @@ func (r *reading) row(s *Series, row []Cell, place func(int) spot) {
 		switch {
 		case r.semi && grouped.MatchString(c.Text):
 			r.fail(at, name, c.Text, "may be in thousands or a decimal number", "write "+strings.ReplaceAll(c.Text, ".", "")+", or "+strings.Replace(c.Text, ".", ",", 1)+" with a decimal comma")
+		case err != nil && !r.comma && decimalComma.MatchString(c.Text):
+			r.fail(at, name, c.Text, "is not a number here", "write it with a decimal point, or part the columns by semicolons: beside those a decimal comma is read")
 		case err != nil:
 			r.fail(at, name, c.Text, "is not a number", "give "+want)
 		case !(v >= low && v <= high):

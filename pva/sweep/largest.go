@@ -75,6 +75,18 @@ func (s *Study) SweepsTake() bool {
 	return d < len(s.Dimensions) && isTake(s.Dimensions[d].Path)
 }
 
+// VariesTakesAlone says whether all keys of a grid set how much is taken. Only
+// then are cells that none beats in risk and take the whole answer: a larger start
+// would beat every other.
+func (s *Study) VariesTakesAlone() bool {
+	for _, d := range s.Dimensions {
+		if !isTake(d.Path) {
+			return false
+		}
+	}
+	return len(s.Dimensions) > 0
+}
+
 // isTake says whether a key sets how much is taken, so that the risk is expected
 // to rise with it.
 func isTake(path string) bool {

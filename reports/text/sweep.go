@@ -88,7 +88,7 @@ func gridRows(r *sweep.Result) string {
 	if len(shown) > most {
 		all := len(shown)
 		best := slices.DeleteFunc(slices.Clone(shown), func(o *sweep.Outcome) bool { return !o.Best })
-		if len(best) > 0 && len(dims) > 1 {
+		if len(best) > 0 && len(dims) > 1 && r.Study.VariesTakesAlone() {
 			note = fmt.Sprintf("Of %s cells those are shown that no other beats in both risk and take; the report holds all.", reports.Grouped(int64(all)))
 			shown = best
 		}
