@@ -220,7 +220,7 @@ func binomialBounds(k, m, n, p float64) (middle, margin float64) {
 		return 0, 1
 	}
 	e2 := float64(e*e) / v
-	bend := float64((1-float64(2*p))/v) * (float64(float64(d*z2)-float64(e*e2))/6 - float64(0.5*(d-e)))
+	bend := float64((1 - float64(2*p)) / v * (float64(float64(d*z2)-float64(e*e2))/6 - float64(0.5*(d-e))))
 	return portable.Exp(bend - float64(0.5*(z2-e2))), (0.1 + float64(z2*(0.3+float64(0.1*z2)))) / v
 }
 
