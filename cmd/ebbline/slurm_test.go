@@ -304,7 +304,10 @@ func TestSlurmTimeLimit(t *testing.T) {
 	mustRun(t, newSweep, "pond.toml", "--replicates", strconv.Itoa(20*longReplicates), "--slurm", theJob, "--program", programHere(t), "--shards", "1", "--time", "3")
 	mustRun(t, newSweep, "--slurm", theJob, "--submit", "--quiet")
 	within(t, 3*time.Minute, "the shard has stopped", func() bool { return len(survey(t).Of(cluster.Failed)) == 1 })
-	if log := logOf(t, 1); !strings.Contains(log, "interrupted: ") || strings.Contains(log, "DUE TO TIME LIMIT") {
+	// Slurm's own line about the warning comes before the program has finished
+	// what is in work.
+	within(t, time.Minute, "the shard says that it was interrupted", func() bool { return strings.Contains(logOf(t, 1), "interrupted: ") })
+	if log := logOf(t, 1); strings.Contains(log, "DUE TO TIME LIMIT") {
 		t.Error(log)
 	}
 	within(t, 30*time.Second, "the merge is taken away", func() bool { return !queued(t) })
