@@ -290,6 +290,9 @@ func figuresTable(a *pva.Assessment, figures []Figure, z scores) *Table {
 			cells["estimate"] = num(f.Value)
 			if f.ID == "exact" || f.ID == "exact_baseline" {
 				cells["estimate"] = num(f.Value).as(Percents, exactDecimals(f.Value))
+				if f.HasInterval { // a mean over draws
+					cells["low"], cells["high"] = num(f.Low), num(f.High)
+				}
 			}
 			if f.ID == "limit" {
 				cells["estimate"] = num(f.Value).as(Percents, PercentDecimals(f.Value))

@@ -186,8 +186,8 @@ func notChecked(a *pva.Assessment) []Paragraph {
 	add := func(s string) { out = append(out, Paragraph{Text: s}) }
 	add("Whether the inputs are right: the checks compare one calculation with another, not with the population.")
 	add("Whether the structure is right: crowding, the laws of the young and the order of the " + a.Case.TimeUnit + " are taken as stated (see Model).")
-	if exactAnswer(a.Exact) == nil {
-		why := "it was not asked for (--no-exact)"
+	if exactAnswer(a.Exact) == nil && a.Uncertainty == nil { // of draws, the sheet about them says it
+		why := "none was computed (--no-exact, or an interrupted run)"
 		if a.Exact != nil {
 			why = a.Exact.Reason
 		}

@@ -62,6 +62,8 @@ func (r *Report) carryUncertainty(a *pva.Assessment) {
 		// The verdict rests on it, so that it leads.
 		risk.Lead = Percent(m.Estimate, u.Case.Pooled.Of)
 		risk.Beside = PercentRange(m.Low, m.High, u.Case.Pooled.Of) + ", exact in each draw"
+		r.Figures = append(r.Figures, Figure{ID: "exact", Label: risk.Label + ", exact in each draw", Text: risk.Lead, Value: m.Estimate, Low: m.Low, High: m.High,
+			HasInterval: true, Note: "the mean of the exact risks of the draws, on which the verdict rests"})
 	}
 	limit := a.Case.Question.Limit
 	if r.VerdictText == "" {

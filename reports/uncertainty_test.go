@@ -128,3 +128,27 @@ func TestShareText(t *testing.T) {
 		}
 	}
 }
+
+// TestUncertainLead: the figure that leads is the one that the verdict rests on,
+// with the same ends, on the terminal and on the first sheet.
+func TestUncertainLead(t *testing.T) {
+	a := drawn(true)
+	m := a.Uncertainty.Case.Mean
+	r := Build(a, Meta{})
+	f := r.Table("figures")
+	if f.Cell("exact", "estimate").Num != m.Estimate || f.Cell("exact", "low").Num != m.Low || f.Cell("exact", "high").Num != m.High || !strings.HasPrefix(r.Figures[0].Beside, PercentRange(m.Low, m.High, 400)) {
+		t.Errorf("%+v, beside %s", f.Cell("exact", "estimate"), r.Figures[0].Beside)
+	}
+	for _, r := range []*Report{r, Build(drawn(false), Meta{})} {
+		for _, s := range r.Part(PartChecks).Sections {
+			for _, p := range s.Paragraphs {
+				if strings.Contains(p.Text, "--no-exact") {
+					t.Errorf("of uncertain inputs it is said: %s", p.Text)
+				}
+			}
+		}
+	}
+	if Build(drawn(false), Meta{}).Table("figures").Row("exact") >= 0 {
+		t.Error("an exact figure without exact draws")
+	}
+}
